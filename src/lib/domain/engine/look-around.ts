@@ -1,0 +1,110 @@
+/** What surrounds one robot now: density, persons near, room alone and shared, and how much of it was seen. */
+
+import { directionAlong } from './way.ts';
+import { computeRoom, computeRooms, computeVerdict, type RoomPerson } from '../room/room.ts';
+import type { FloorModel } from './floor-model.ts';
+import { computeLocalDensity, computeObservedShare } from './local-density.ts';
+import type { PersonPoint } from './frame.ts';
+import { latestPose, type Moment, type RobotView } from './robot-view.ts';
+import type { EngineRules } from './rules.ts';
+
+/** m along the route: far enough to look past the robot's own footprint, near enough to follow a corner. */
+const LOOK_AHEAD_M = 1.5;
+
+export interface Surroundings {
+	readonly persons: readonly PersonPoint[];
+	/** 2n, x then y, of the persons on observed floor */
+	readonly points: Float64Array;
+	readonly observed: Uint8Array;
+	/** m/s, what people here give way by */
+	readonly flexibility: number;
+}
+
+/** Null before the first pose. */
+export function lookAround(
+	model: FloorModel,
+	rules: EngineRules,
+	view: RobotView,
+	{ persons, points, observed, flexibility }: Surroundings,
+	now: number
+): Moment | null {
+	const pose = latestPose(view);
+	if (!pose) return null;
+	const { density: densityRule, room: roomRule, halt: haltRule } = rules;
+	const { x, y } = pose;
+	const { radius, maxSpeed } = view.robot.model;
+	const local = computeLocalDensity(
+		model,
+		observed,
+		points,
+		x,
+		y,
+		densityRule.aroundRadiusM,
+		densityRule.leastCoverage
+	);
+	const reach = maxSpeed * roomRule.horizonS;
+	const observedShare = computeObservedShare(model, observed, x, y, reach);
+	let within2m = 0;
+	let nearest = Infinity;
+	for (const person of persons) {
+		const distance = Math.hypot(person.x - x, person.y - y);
+		if (distance <= 2) within2m += 1;
+		if (distance < nearest) nearest = distance;
+	}
+	const base = {
+		time: now,
+		density: local.density,
+		coverage: local.coverage,
+		personsWithin2m: within2m,
+		nearestPerson: nearest === Infinity ? null : nearest,
+		observedShare,
+		flexibility
+	};
+	const direction = view.task ? directionAlong(view.task.route, view.task.goal, x, y, LOOK_AHEAD_M) : null;
+	if (direction === null) {
+		return { ...base, roomAlone: null, roomShared: null, limitedByPeople: null, verdict: 'unseen' };
+	}
+	const query = {
+		x,
+		y,
+		radius,
+		maxSpeed,
+		direction,
+		horizon: roomRule.horizonS,
+		sector: roomRule.sectorRad,
+		persons: nearPersons(persons, x, y, reach, rules, flexibility),
+		walls: model.solid.near(x, y, reach + radius)
+	};
+	const { alone, shared } = computeRooms(query);
+	const blocked = alone < haltRule.goSpeed;
+	return {
+		...base,
+		roomAlone: alone,
+		roomShared: shared,
+		limitedByPeople: blocked && computeRoom({ ...query, persons: [] }).speed >= haltRule.goSpeed,
+		verdict: computeVerdict({
+			alone,
+			shared,
+			goSpeed: haltRule.goSpeed,
+			observedShare,
+			leastObserved: haltRule.leastObservedShare
+		})
+	};
+}
+
+/** m/s; the fastest a person is expected to come towards a robot, so that who can matter is not left out. */
+const PERSON_SPEED = 2;
+
+function nearPersons(
+	persons: readonly PersonPoint[],
+	x: number,
+	y: number,
+	reach: number,
+	{ room }: EngineRules,
+	flexibility: number
+): RoomPerson[] {
+	const limit = reach + PERSON_SPEED * room.horizonS;
+	return persons
+		.filter((person) => Math.hypot(person.x - x, person.y - y) <= limit)
+		.map(({ x: px, y: py, vx, vy }) => ({ x: px, y: py, vx, vy, radius: room.personRadiusM, flexibility }));
+}

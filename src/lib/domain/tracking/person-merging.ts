@@ -1,0 +1,165 @@
+/** Two tracks that turn out to be one person. */
+
+import { fuseCorrelated } from './fusion.ts';
+import { chiSquareGate } from './gating.ts';
+import { coastTrack, predictTrack, type PersonTrack, type TrackerRule } from './person-track.ts';
+
+/** One scan as the tracker remembers it: which tracks the robot saw in it. */
+export interface RecentScan {
+	readonly time: number;
+	readonly tracks: ReadonlySet<number>;
+}
+
+/** By robot, newest last. */
+export type RecentScans = ReadonlyMap<string, readonly RecentScan[]>;
+
+/** m/s, difference in velocity that two tracks of one person may have beside their own uncertainty */
+const VELOCITY_SLACK = 0.3;
+/** s since the last measurement after which a track is too vague to be told from its neighbours */
+const FRESH = 0.6;
+
+export interface Merged {
+	readonly tracks: PersonTrack[];
+	readonly scans: RecentScans;
+}
+
+/**
+ * Merges what has become one person: tracks in the same place with like velocity that no robot has seen apart of late.
+ * When both are established they must also have stayed together for `mergeAfter`, so that people who cross or pass each
+ * other, each seen by another robot, stay two.
+ *
+ * @param touched indices of the tracks the present scan has measured; every pair looked at has one of them
+ */
+export function mergeTracks(
+	tracks: readonly PersonTrack[],
+	touched: readonly number[],
+	scans: RecentScans,
+	time: number,
+	rule: TrackerRule
+): Merged {
+	const list: (PersonTrack | null)[] = [...tracks];
+	const measured = new Set(touched);
+	let recent = scans;
+	for (const index of touched) {
+		const track = list[index]!;
+		const near = nearestTwin(track, list, measured, recent, time, rule);
+		if (near < 0) {
+			if (track.closeTo) list[index] = { ...track, closeTo: null };
+			continue;
+		}
+		const twin = list[near]!;
+		const since = track.closeTo?.id === twin.id ? track.closeTo.since : time;
+		const established = time - Math.max(track.bornAt, twin.bornAt) >= rule.mergeAfter;
+		if (established && time - since < rule.mergeAfter) {
+			list[index] = { ...track, closeTo: { id: twin.id, since } };
+			continue;
+		}
+		const merged = mergePair(track, twin, rule);
+		list[index] = merged;
+		list[near] = null;
+		recent = renameInScans(recent, merged.id === track.id ? twin : track, merged.id);
+	}
+	return { tracks: list.filter((track) => track !== null), scans: recent };
+}
+
+function nearestTwin(
+	track: PersonTrack,
+	list: readonly (PersonTrack | null)[],
+	measured: ReadonlySet<number>,
+	scans: RecentScans,
+	time: number,
+	rule: TrackerRule
+): number {
+	const gate = chiSquareGate(rule.gateProbability, 2);
+	let nearest = -1;
+	let nearestAt = rule.mergeWithin;
+	list.forEach((other, index) => {
+		if (!other || measured.has(index) || time - other.seenAt > FRESH) return;
+		// A first look without the square roots: nobody walks out of this box within FRESH.
+		if (Math.abs(other.x - track.x) > 3 || Math.abs(other.y - track.y) > 3) return;
+		const there = predictTrack(other, track.updatedAt, rule);
+		const distance = Math.hypot(there.x - track.x, there.y - track.y);
+		if (distance >= nearestAt) return;
+		const variance = track.covariance[0]! + there.variance + 2 * rule.alignmentSd * rule.alignmentSd;
+		if (distance * distance > gate * variance) return;
+		const slip = Math.hypot(there.vx - track.vx, there.vy - track.vy);
+		const slack = track.covariance[10]! + other.covariance[10]! + VELOCITY_SLACK * VELOCITY_SLACK;
+		if (slip * slip > gate * slack || seenApart(track, other, scans, time - rule.apartFor)) return;
+		nearest = index;
+		nearestAt = distance;
+	});
+	return nearest;
+}
+
+/** Did any robot report both in one scan since then? */
+function seenApart(a: PersonTrack, b: PersonTrack, scans: RecentScans, since: number): boolean {
+	for (const robot of a.seenBy.keys()) {
+		if (!b.seenBy.has(robot)) continue;
+		const own = scans.get(robot) ?? [];
+		for (let k = own.length - 1; k >= 0 && own[k]!.time >= since; k -= 1) {
+			if (own[k]!.tracks.has(a.id) && own[k]!.tracks.has(b.id)) return true;
+		}
+	}
+	return false;
+}
+
+/**
+ * One track from two, under the name of the older. What each knows may come from the same reports, so they are fused by
+ * covariance intersection, axis by axis on position and speed.
+ */
+function mergePair(a: PersonTrack, b: PersonTrack, rule: TrackerRule): PersonTrack {
+	const [older, newer] = a.id < b.id ? [a, b] : [b, a];
+	const updatedAt = Math.max(a.updatedAt, b.updatedAt);
+	const [p, q] = [coastTrack(a, updatedAt, rule.q), coastTrack(b, updatedAt, rule.q)];
+	const axis = (of: typeof p, position: number, speed: number) => ({
+		x: position,
+		y: speed,
+		covariance: { xx: of.covariance[0]!, xy: of.covariance[2]!, yy: of.covariance[10]! }
+	});
+	const alongX = fuseCorrelated(axis(p, p.x, p.vx), axis(q, q.x, q.vx));
+	const alongY = fuseCorrelated(axis(p, p.y, p.vy), axis(q, q.y, q.vy));
+	const covariance = new Float64Array(16);
+	[alongX, alongY].forEach(({ covariance: { xx, xy, yy } }, k) => {
+		covariance[k * 5] = xx;
+		covariance[k * 5 + 2] = xy;
+		covariance[k * 5 + 8] = xy;
+		covariance[k * 5 + 10] = yy;
+	});
+	const seenBy = new Map(newer.seenBy);
+	for (const [robot, sighting] of older.seenBy) {
+		if (sighting.at >= (seenBy.get(robot)?.at ?? -Infinity)) seenBy.set(robot, sighting);
+	}
+	return {
+		...older,
+		x: alongX.x,
+		y: alongY.x,
+		vx: alongX.y,
+		vy: alongY.y,
+		covariance,
+		updatedAt,
+		updatedBy: a.updatedAt >= b.updatedAt ? a.updatedBy : b.updatedBy,
+		seenAt: Math.max(a.seenAt, b.seenAt),
+		bornAt: Math.min(a.bornAt, b.bornAt),
+		hits: a.hits + b.hits,
+		confirmed: a.confirmed || b.confirmed,
+		seenBy,
+		misses: Math.min(a.misses, b.misses),
+		interval: Math.min(a.interval, b.interval),
+		closeTo: null
+	};
+}
+
+/** Who was seen apart from the track that goes was seen apart from the one that stays. */
+function renameInScans(scans: RecentScans, gone: PersonTrack, stays: number): RecentScans {
+	const renamed = new Map(scans);
+	for (const robot of gone.seenBy.keys()) {
+		const own = (scans.get(robot) ?? []).map((scan) => {
+			if (!scan.tracks.has(gone.id)) return scan;
+			const tracks = new Set(scan.tracks).add(stays);
+			tracks.delete(gone.id);
+			return { ...scan, tracks };
+		});
+		renamed.set(robot, own);
+	}
+	return renamed;
+}

@@ -1,0 +1,29 @@
+/** Entry of the engine's worker thread. */
+
+import { parentPort, workerData } from 'node:worker_threads';
+import pino from 'pino';
+import type { EngineStart, FromEngine, ToEngine } from '../../contracts/threads.ts';
+import { startEngine } from '../engine/engine.ts';
+
+const start = workerData as EngineStart;
+const log = pino({ level: start.log_level, name: 'engine' });
+const tell = (message: FromEngine) => parentPort?.postMessage(message);
+
+try {
+	const engine = await startEngine(start, log, tell);
+	parentPort?.on('message', (message: ToEngine) => {
+		if (message.type === 'reload') {
+			engine.reload().catch((cause: unknown) => log.error(cause, 'the changed configuration cannot be read'));
+			return;
+		}
+		void engine.stop().then(() => {
+			tell({ type: 'stopped' });
+			parentPort?.close();
+		});
+	});
+	tell({ type: 'ready' });
+} catch (cause) {
+	log.fatal(cause, 'the engine cannot start');
+	process.exitCode = 1;
+	parentPort?.close();
+}
