@@ -46,7 +46,8 @@ function inWords(cause: unknown): string {
 	if (cause instanceof Failure) return cause.message;
 	const { code, syscall, port, stack } = cause as NodeJS.ErrnoException & { port?: number };
 	if (syscall === 'listen' && code === 'EADDRINUSE') return `Port ${port} is taken; choose another with PORT.`;
-	if (syscall === 'listen' && code === 'EACCES') return `Port ${port} may not be used; choose one above 1023 with PORT.`;
+	if (syscall === 'listen' && code === 'EACCES')
+		return `Port ${port} may not be used; choose one above 1023 with PORT.`;
 	return stack ?? String(cause);
 }
 
@@ -81,11 +82,18 @@ async function answer(app: App, event: RequestEvent, resolve: Parameters<Handle>
 	const isApi = areaOf({ routeId: event.route.id, pathname: url.pathname }) === 'api';
 	switch (judgeVisit(visitFrom(event))) {
 		case 'foreign origin':
-			return problem({ title: 'Not allowed', status: 403, detail: 'The request comes from another site.' }, locals.requestId);
+			return problem(
+				{ title: 'Not allowed', status: 403, detail: 'The request comes from another site.' },
+				locals.requestId
+			);
 		case 'not json':
-			return problem({ title: 'JSON only', status: 415, detail: 'Send the body as application/json.' }, locals.requestId);
+			return problem(
+				{ title: 'JSON only', status: 415, detail: 'Send the body as application/json.' },
+				locals.requestId
+			);
 		case 'sign in':
-			if (isApi) return problemFrom(new Failure('unauthenticated', 'Sign in, or send a valid token.'), locals.requestId);
+			if (isApi)
+				return problemFrom(new Failure('unauthenticated', 'Sign in, or send a valid token.'), locals.requestId);
 			return redirect(303, `/sign-in?next=${encodeURIComponent(url.pathname + url.search)}`);
 		case 'come in':
 			return resolve(event);
@@ -112,6 +120,7 @@ export const handleError: HandleServerError = ({ error, event, status, message }
 	if (status < 500) return { message, errorId };
 	const app: App | undefined = event.locals.app;
 	app?.log.error({ err: error, request: errorId, route: event.route.id }, 'request failed');
-	if (error instanceof Failure && STATUS[error.code] >= 500) return { message: error.message, code: error.code, errorId };
+	if (error instanceof Failure && STATUS[error.code] >= 500)
+		return { message: error.message, code: error.code, errorId };
 	return { message: 'Something went wrong here. The number helps to find out what.', code: 'bug', errorId };
 };

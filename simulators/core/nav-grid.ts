@@ -148,7 +148,7 @@ export function findRoute(grid: NavGrid, field: DistanceField, from: Point, goal
 	const start = nearestFree(grid, from.x, from.y);
 	let at = start ? grid.index(start.x, start.y) : -1;
 	if (at < 0 || field[at] === Infinity) return null;
-	const cells: Point[] = [from];
+	const cells: Point[] = [{ x: from.x, y: from.y }];
 	const { cols, rows } = grid;
 	while (field[at]! > 0) {
 		let next = at;

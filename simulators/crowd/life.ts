@@ -44,6 +44,8 @@ export class Life {
 	readonly #forced: Uint8Array;
 	readonly #fields: (DistanceField | null)[];
 	readonly #queues: Queue[];
+	/** Per place the spots that draw most people. */
+	readonly #attractions: { x: number; top: boolean }[][];
 	readonly #groups = new Map<number, number[]>();
 	#lastGroup = 0;
 	#time = 0;
@@ -65,6 +67,9 @@ export class Life {
 		this.#child = new Uint8Array(n);
 		this.#forced = new Uint8Array(n);
 		this.#fields = places.map(() => null);
+		this.#attractions = places.map(({ minX, maxX }) =>
+			[0, 1, 2].map(() => ({ x: random.between(minX, maxX), top: random.chance(0.5) }))
+		);
 		this.#queues = places.flatMap((place, i) => (place.queue ? [{ place: i, members: [], nextServed: 0 }] : []));
 	}
 
@@ -363,8 +368,10 @@ export class Life {
 			x = this.random.between(minX, maxX);
 			y = this.random.between(minY, maxY);
 			if (kind === 'stand' && this.random.chance(0.85)) {
-				const edge = this.random.between(0, 0.5);
-				y = this.random.chance(0.5) ? minY + edge : maxY - edge;
+				// Most people look at the few stands everybody looks at.
+				const attraction = this.#attractions[place]![this.random.weighted([4, 2, 1])]!;
+				x = Math.min(maxX, Math.max(minX, this.random.normal(attraction.x, 1.3)));
+				y = attraction.top ? maxY - this.random.exponential(0.35) : minY + this.random.exponential(0.35);
 			}
 			const at = this.grid.index(x, y);
 			if (at >= 0 && this.grid.free[at]) break;

@@ -20,7 +20,7 @@ const pillars = [
 const fixtures = {
 	infoDesk: rect(36, 12, 42, 14),
 	liftCore: rect(57, 14, 63, 18),
-	stage: rect(50, 62, 70, 68),
+	stage: rect(51, 63, 70, 69.5),
 	mixerDesk: rect(58, 44, 62, 46),
 	kitchen: rect(94, 1.5, 114, 3),
 	palletsWest: rect(38, 76.5, 41, 78.5),
@@ -30,7 +30,7 @@ const fixtures = {
 const walls = [
 	...wallAlongX(70, 0, 120, [
 		[18, 22],
-		[58, 62],
+		[43, 47],
 		[98, 102]
 	]),
 	...wallAlongX(30, 0, 120, [
@@ -109,15 +109,15 @@ const places: Place[] = [
 	place('entrance', 'entrance', [50, -4.5, 70, -3]),
 	...[33.2, 40.3, 50, 58.8, 66.5].map((y, i) => place(`hall-a-${i + 1}`, 'stand', [4, y - 0.9, 36, y + 0.9])),
 	...[32.5, 41, 50.5, 60, 67.5].map((y, i) => place(`hall-c-${i + 1}`, 'stand', [83, y - 1, 115, y + 1])),
-	place('audience', 'audience', [48, 50, 72, 61]),
-	place('hall-b-rear', 'lounge', [48, 34, 72, 42]),
+	place('audience', 'audience', [51, 52.5, 69, 61]),
+	place('hall-b-rear', 'lounge', [54, 33, 66, 40]),
 	place('cloakroom', 'counter', [6, 3, 14, 12], { queue: queueSlots(4, 3, 0, 0.75, 30, 12), service: 6 }),
 	place('food-west', 'counter', [94, 3.5, 100, 9], { queue: queueSlots(97, 3.8, 0, 0.8, 16, 8), service: 14 }),
 	place('food-east', 'counter', [106, 3.5, 112, 9], { queue: queueSlots(109, 3.8, 0, 0.8, 16, 8), service: 14 }),
 	...[14.5, 18.5, 22.5].map((y, i) => place(`tables-${i + 1}`, 'table', [95, y, 116, y + 2])),
 	place('lifts', 'lift', [57, 10, 63, 13.5], { queue: queueSlots(58, 12.9, 0.8, 0, 18, 6), service: 9 }),
-	place('foyer-west', 'lounge', [22, 4, 44, 11]),
-	place('foyer-east', 'lounge', [76, 10, 88, 28])
+	place('foyer-west', 'lounge', [32, 6, 43, 11]),
+	place('foyer-east', 'lounge', [76, 20, 84, 28])
 ];
 
 const goal = (key: string, x: number, y: number): RobotGoal => ({ key, x, y });
@@ -133,7 +133,7 @@ const goals: RobotGoal[] = [
 	goal('hall-a-south', 20, 33),
 	goal('hall-b-west', 43, 45),
 	goal('hall-b-east', 77, 45),
-	goal('hall-b-stage-door', 44, 66),
+	goal('hall-b-stage-door', 47, 63),
 	goal('hall-c-west', 93, 51),
 	goal('hall-c-north', 105, 60),
 	goal('hall-c-south', 93, 33),
@@ -147,7 +147,7 @@ const goals: RobotGoal[] = [
 
 const docks = Array.from({ length: 17 }, (_, i) => goal(`dock-${i + 1}`, 3 + 2 * i, 78.6));
 
-const doors = [goal('door-a', 20, 70), goal('door-b', 60, 70), goal('door-c', 100, 70)];
+const doors = [goal('door-a', 20, 70), goal('door-b', 45, 70), goal('door-c', 100, 70)];
 const lift = goal('lift', 60, 12.2);
 
 export const GROUND: VenueFloor = {

@@ -50,7 +50,7 @@ function random(seed: number): () => number {
 function crowd(size: number): Float64Array {
 	const next = random(7);
 	const points = new Float64Array(2 * size);
-	for (let i = 0; i < size; ) {
+	for (let i = 0; i < size;) {
 		const [cx, cy] = [30 + 30 * (i % 3), 25 + 30 * (i % 2)];
 		const x = i % 2 ? next() * 120 : cx + 10 * (next() - 0.5);
 		const y = i % 2 ? next() * 80 : cy + 10 * (next() - 0.5);

@@ -3,7 +3,7 @@
 import { fitPoisson } from '../../src/lib/domain/statistics/glm.ts';
 import { fitIsotonicRates } from '../../src/lib/domain/statistics/isotonic.ts';
 
-export interface BenchPart {
+interface BenchPart {
 	readonly name: string;
 	readonly ours: () => void;
 	readonly straightforward: () => void;
@@ -58,7 +58,7 @@ export function statisticsParts(): BenchPart[] {
 }
 
 /** Iteratively reweighted least squares with lists of lists and an explicit inverse, to the same precision. */
-export function textbookPoisson(counts: number[], exposures: number[], rows: number[][]): number[] {
+function textbookPoisson(counts: number[], exposures: number[], rows: number[][]): number[] {
 	const p = rows[0]!.length;
 	let eta = counts.map((y) => Math.log(y + 0.1));
 	let beta: number[] = new Array(p).fill(0);
@@ -95,7 +95,7 @@ function invert(matrix: number[][]): number[][] {
 }
 
 /** Merges the first pair out of order and starts again, until none is. */
-export function textbookIsotonic(counts: number[], exposures: number[]): number[] {
+function textbookIsotonic(counts: number[], exposures: number[]): number[] {
 	const pools = counts.map((count, i) => ({ count, hours: exposures[i]!, size: 1 }));
 	for (let i = 0; i + 1 < pools.length;) {
 		const [a, b] = [pools[i]!, pools[i + 1]!];

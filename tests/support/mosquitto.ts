@@ -7,10 +7,14 @@ import { connect } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { mosquittoConfiguration, writeMosquittoFiles } from '../../src/lib/server/broker/mosquitto-files.ts';
-import { freePort, until, type BrokerKind, type TestBroker } from './brokers.ts';
-import { robotSet, SERVICE } from './robots.ts';
+import { freePort, robotSet, SERVICE, until, type BrokerKind, type TestBroker } from './brokers.ts';
 
-const PATHS = ['/usr/sbin/mosquitto', '/usr/local/sbin/mosquitto', '/usr/bin/mosquitto', '/opt/homebrew/sbin/mosquitto'];
+const PATHS = [
+	'/usr/sbin/mosquitto',
+	'/usr/local/sbin/mosquitto',
+	'/usr/bin/mosquitto',
+	'/opt/homebrew/sbin/mosquitto'
+];
 const PATH = PATHS.find((path) => existsSync(path));
 
 /** Why Mosquitto cannot be tested here; null when it can. A CI run has no such excuse. */

@@ -12,7 +12,7 @@ import { createHub, type LiveHub } from './live/hub.ts';
 import type { Settings } from './settings.ts';
 import { createLog, type Log } from './telemetry/log.ts';
 import { createMetrics, type Metrics } from './telemetry/metrics.ts';
-import { startThreads } from './threads/supervisor.ts';
+import { startThreads, UNKNOWN_HEALTH, type StartThreads, type Threads } from './threads/supervisor.ts';
 
 export interface App {
 	readonly settings: Settings;
@@ -27,35 +27,9 @@ export interface App {
 	stop(): Promise<void>;
 }
 
-export interface Threads {
-	/** Floors, zones, robots, credentials or rules changed in the database. */
-	reload(): void;
-	health(): LiveHealth;
-	stop(): Promise<void>;
-}
-
-export interface ThreadParts {
-	readonly settings: Settings;
-	readonly log: Log;
-	readonly onMessage: (message: FromEngine) => void;
-	readonly onHealth: (health: LiveHealth) => void;
-}
-
 /** Readers take a silent line for dead after 5 s, so health is told well before, engine or not. */
 const HEALTH_EVERY_MS = 2000;
 const SWEEP_EVERY_MS = 3_600_000;
-
-/** What everybody hears until the threads have said something. */
-const STARTING: LiveHealth = {
-	server_time_ms: 0,
-	broker: false,
-	engine: false,
-	storage: true,
-	troubles: ['The desk is starting.'],
-	messages_per_s: 0,
-	rejected_total: 0,
-	last_message_age_ms: null
-};
 
 /**
  * Starts everything. What has been started is stopped again when a later part fails.
@@ -65,7 +39,7 @@ const STARTING: LiveHealth = {
  */
 export async function startApp(
 	settings: Settings,
-	start: (parts: ThreadParts) => Promise<Threads> = startThreads
+	start: (parts: StartThreads) => Promise<Threads> = startThreads
 ): Promise<App> {
 	const log = createLog(settings);
 	const running: (() => Promise<void> | void)[] = [];
@@ -82,8 +56,11 @@ export async function startApp(
 		const applied = await migrateToLatest(db);
 		if (applied.length > 0) log.info({ applied }, 'database brought up to date');
 
-		const hub = createHub({ health: { ...STARTING, server_time_ms: Date.now() }, alarms: await readLiveAlarms(db) });
-		let health: () => LiveHealth = () => STARTING;
+		const hub = createHub({
+			health: { ...UNKNOWN_HEALTH, server_time_ms: Date.now() },
+			alarms: await readLiveAlarms(db)
+		});
+		let health: () => LiveHealth = () => UNKNOWN_HEALTH;
 		const metrics = createMetrics({
 			readers: () => hub.readers,
 			messagesPerS: () => health().messages_per_s,

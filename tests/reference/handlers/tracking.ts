@@ -1,7 +1,12 @@
 /* eslint-disable @typescript-eslint/no-explicit-any -- reference cases are plain JSON */
 /** Reference kinds of prediction, gating, assignment and tracking quality. */
 
-import { assignMostPairs, assignWithinGate, computeGreedyTotal } from '../../../src/lib/domain/tracking/assignment.ts';
+import {
+	computeGreedyTotal,
+	isOnlyMostPairs,
+	isOnlyWithinGate
+} from '../../../src/lib/domain/tracking/assignment-checks.ts';
+import { assignMostPairs, assignWithinGate } from '../../../src/lib/domain/tracking/assignment.ts';
 import { fuseReports, type PositionEstimate } from '../../../src/lib/domain/tracking/fusion.ts';
 import { chiSquareGate, mahalanobisSquared } from '../../../src/lib/domain/tracking/gating.ts';
 import {
@@ -72,15 +77,16 @@ function noiseOfSteps(dt: number, parts: number, model: any) {
 
 function gated({ cost, gate }: any) {
 	const table = costs(cost);
-	const most = assignMostPairs(table, Number(gate));
-	const best = assignWithinGate(table, Number(gate));
+	const limit = Number(gate);
+	const most = assignMostPairs(table, limit);
+	const best = assignWithinGate(table, limit);
 	const unused = (size: number, side: 0 | 1) =>
 		Array.from({ length: size }, (_, i) => i).filter((i) => !best.pairs.some((pair) => pair[side] === i));
 	return {
-		most_pairs: { total: most.total, pairs: most.pairs, pairs_unique: most.unique },
+		most_pairs: { total: most.total, pairs: most.pairs, pairs_unique: isOnlyMostPairs(table, most, limit) },
 		total_with_miss_costs: best.total,
 		pairs: best.pairs,
-		pairs_unique: best.unique,
+		pairs_unique: isOnlyWithinGate(table, best, limit),
 		unmatched_rows: unused(table.length, 0),
 		unmatched_cols: unused(table[0]?.length ?? 0, 1)
 	};
@@ -145,8 +151,8 @@ export const handlers: Record<string, (input: any) => unknown> = {
 	},
 	assignment: ({ cost }) => {
 		const table = costs(cost);
-		const { total, pairs, unique } = assignMostPairs(table);
-		return { total, pairs, pairs_unique: unique, greedy_total: computeGreedyTotal(table) };
+		const best = assignMostPairs(table);
+		return { ...best, pairs_unique: isOnlyMostPairs(table, best), greedy_total: computeGreedyTotal(table) };
 	},
 	assignment_gated: gated,
 	cross_robot_fusion: fusion,

@@ -50,7 +50,6 @@ export function openPlanView(library: Library, options: Options): PlanView {
 	const still = matchMedia('(prefers-reduced-motion: reduce)');
 	const scene = new Scene(plan, options.robots, () => still.matches);
 	const overlay = new Overlay(canvas, scene);
-	const image = document.createElement('canvas');
 	let ink = readInk();
 	let margins = options.margins;
 	let related = NOTHING;
@@ -65,7 +64,7 @@ export function openPlanView(library: Library, options: Options): PlanView {
 
 	const paint = () => {
 		const source = map.getSource<ImageSource>(HEAT);
-		if (source) paintHeat(source, image, field, ink, plan);
+		if (source) paintHeat(source, field, ink, plan);
 	};
 	map.on('style.load', () => {
 		if (!map.hasImage(HATCH)) map.addImage(HATCH, drawHatch(ink, HATCH_SCALE), { pixelRatio: HATCH_SCALE });
@@ -190,13 +189,10 @@ function inSight(view: View, margins: Margins, x: number, y: number): boolean {
 }
 
 /** Puts the density into the image layer; without a field the whole floor counts as unobserved. */
-function paintHeat(source: ImageSource, canvas: HTMLCanvasElement, field: LiveField | null, ink: Ink, plan: Plan): void {
+function paintHeat(source: ImageSource, field: LiveField | null, ink: Ink, plan: Plan): void {
 	const box = boundsOf(plan.walkable.outer);
 	const { cols, rows } = field ?? { cols: 1, rows: 1 };
-	if (canvas.width !== cols || canvas.height !== rows) [canvas.width, canvas.height] = [cols, rows];
-	const ctx = canvas.getContext('2d');
-	if (!ctx) return;
-	const pixels = ctx.createImageData(cols, rows);
+	const pixels = new ImageData(cols, rows);
 	if (field) paintField(unpackField(field), field, computeRamp(ink.theme), RAMP_MAX_PER_M2, pixels.data);
 	const coordinates = field
 		? imageCorners(field.x0_m, field.y0_m, field.x0_m + cols * field.cell_m, field.y0_m + rows * field.cell_m)

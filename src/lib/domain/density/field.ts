@@ -24,7 +24,8 @@ export function computeDensityField(
 ): Float32Array {
 	const { x0, y0, cell, cols, rows, area } = grid;
 	if (!(radius > 0)) throw new Failure('bad_input', 'The kernel radius must be positive.');
-	if (observed.length !== area.length) throw new Failure('bad_input', 'One mark per cell says whether it was observed.');
+	if (observed.length !== area.length)
+		throw new Failure('bad_input', 'One mark per cell says whether it was observed.');
 	const seenArea = new Float64Array(area.length);
 	for (let i = 0; i < area.length; i++) seenArea[i] = observed[i] === 1 ? area[i]! : 0;
 	const sum = new Float64Array(area.length);

@@ -41,8 +41,7 @@ export interface Capacity {
 
 /** Greatest flow and where it occurs: the root of dq/dρ, halved until nothing changes. */
 export function computeCapacity(): Capacity {
-	const isRising = (density: number) =>
-		Math.exp(-GAMMA * (1 / density - 1 / JAM_DENSITY)) * (1 + GAMMA / density) < 1;
+	const isRising = (density: number) => Math.exp(-GAMMA * (1 / density - 1 / JAM_DENSITY)) * (1 + GAMMA / density) < 1;
 	let low = 1;
 	let high = 3;
 	for (let middle = 2; middle > low && middle < high; middle = (low + high) / 2) {

@@ -117,7 +117,10 @@ export function createKernelDensity({ points, velocities, walkable, radius }: Ke
 				uncorrected,
 				massAtPoint,
 				correctedAtPoint: massAtPoint > 0 ? uncorrected / massAtPoint : null,
-				correctedPerPerson: weights.reduce((sum, weight, i) => (weight > 0 ? sum + weight / massAtPersons[i]! : sum), 0),
+				correctedPerPerson: weights.reduce(
+					(sum, weight, i) => (weight > 0 ? sum + weight / massAtPersons[i]! : sum),
+					0
+				),
 				motion: velocities && uncorrected > 0 ? motionOf(weights, velocities, uncorrected) : null
 			};
 		}
@@ -131,7 +134,8 @@ function motionOf(weights: readonly number[], velocities: Float64Array, density:
 		vy += (weight * velocities[2 * i + 1]!) / density;
 	});
 	const velocityVariance = weights.reduce(
-		(sum, weight, i) => sum + (weight * ((velocities[2 * i]! - vx) ** 2 + (velocities[2 * i + 1]! - vy) ** 2)) / density,
+		(sum, weight, i) =>
+			sum + (weight * ((velocities[2 * i]! - vx) ** 2 + (velocities[2 * i + 1]! - vy) ** 2)) / density,
 		0
 	);
 	return {

@@ -12,11 +12,7 @@ import { SQUARE_FOOT_M2 } from '../units.ts';
 export type Level = 'A' | 'B' | 'C' | 'D' | 'E' | 'F';
 
 export type LevelOfServiceScheme =
-	| 'fruin_walkway'
-	| 'fruin_queueing'
-	| 'hcm2010_walkway_average'
-	| 'hcm2010_walkway_platoon'
-	| 'hcm2000_queueing';
+	'fruin_walkway' | 'fruin_queueing' | 'hcm2010_walkway_average' | 'hcm2010_walkway_platoon' | 'hcm2000_queueing';
 
 export interface LevelOfServiceTable {
 	/** Name to show beside the letter */

@@ -99,10 +99,14 @@ export function measureVoronoi(cells: VoronoiCells, zone: Polygon, observed: Obs
 		const { index, area } = zoneCells(zone, cells.walkable, observed.grid);
 		let seenArea = 0;
 		for (let k = 0; k < index.length; k++) if (observed.seen[index[k]!] === 1) seenArea += area[k]!;
-		return summarise(cells, floor, floor.area, seenArea, (shape, x, y) => withinSeen(floor, observed, shape, x, y, cells.radius));
+		return summarise(cells, floor, floor.area, seenArea, (shape, x, y) =>
+			withinSeen(floor, observed, shape, x, y, cells.radius)
+		);
 	}
 	const region = observed ? createRegion(intersect(floor.polygons, observed)) : floor;
-	return summarise(cells, region, floor.area, region.area, (shape, x, y) => region.areaWithin(shape, x, y, cells.radius));
+	return summarise(cells, region, floor.area, region.area, (shape, x, y) =>
+		region.areaWithin(shape, x, y, cells.radius)
+	);
 }
 
 function summarise(

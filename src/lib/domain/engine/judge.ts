@@ -74,7 +74,7 @@ export function sampleOf(floor: Floor, view: RobotView, now: number): RobotSampl
 	return {
 		time: now,
 		pose,
-		remaining: pose && task ? remainingAlong(task.route, task.goal, pose.x, pose.y) : null,
+		remaining: pose && task ? remainingAlong(task.route ?? [], task.goal, pose.x, pose.y) : null,
 		taskId: task?.id ?? null,
 		tasked: state?.tasked ?? false,
 		automatic: state !== null && DRIVES_ITSELF.has(state.mode),

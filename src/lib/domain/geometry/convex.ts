@@ -81,8 +81,7 @@ export function flatArea(polygon: Flat): number {
 	const oy = polygon[1]!;
 	let twice = 0;
 	for (let i = 2; i + 3 < polygon.length; i += 2) {
-		twice +=
-			(polygon[i]! - ox) * (polygon[i + 3]! - oy) - (polygon[i + 2]! - ox) * (polygon[i + 1]! - oy);
+		twice += (polygon[i]! - ox) * (polygon[i + 3]! - oy) - (polygon[i + 2]! - ox) * (polygon[i + 1]! - oy);
 	}
 	return twice / 2;
 }
@@ -144,7 +143,9 @@ const sector = (ax: number, ay: number, bx: number, by: number, squared: number)
 
 /** Trapezoids and triangles, counter-clockwise, that tile a polygon given as its rings (even–odd). */
 export function convexPieces(rings: readonly Flat[]): Flat[] {
-	const levels = [...new Set(rings.flatMap((ring) => ring.filter((_, index) => index % 2 === 1)))].sort((a, b) => a - b);
+	const levels = [...new Set(rings.flatMap((ring) => ring.filter((_, index) => index % 2 === 1)))].sort(
+		(a, b) => a - b
+	);
 	const pieces: Flat[] = [];
 	for (let k = 0; k + 1 < levels.length; k++) {
 		const low = levels[k]!;

@@ -40,12 +40,14 @@ export function findRoom(
 	scale: number,
 	atLeast: Room = { speed: 0, x: 0, y: 0 }
 ): Room {
-	const { maxSpeed, sector } = limits;
+	const { maxSpeed } = limits;
+	// Beyond a right angle there is no progress to be found.
+	const sector = Math.min(limits.sector, Math.PI / 2);
 	if (!(maxSpeed > 0)) return { speed: 0, x: 0, y: 0 };
-	const search = new Search(obstacles, limits, scale, atLeast);
+	const search = new Search(obstacles, { maxSpeed, sector }, scale, atLeast);
 	if (search.offer(maxSpeed, 0)) return search.best();
 	searchGrid(search, maxSpeed, sector);
-	searchCrossings(search, collectCurves(obstacles, limits, scale, search.bestX));
+	searchCrossings(search, collectCurves(obstacles, { maxSpeed, sector }, scale, search.bestX));
 	return search.best();
 }
 

@@ -127,7 +127,7 @@ export function multiply(a: Float64Array, b: Float64Array, p: number): Float64Ar
 }
 
 /** Copies the lower triangle onto the upper one; changes and returns its argument. */
-export function mirror(matrix: Float64Array, p: number): Float64Array {
+function mirror(matrix: Float64Array, p: number): Float64Array {
 	for (let i = 0; i < p; i++) for (let j = 0; j < i; j++) matrix[j * p + i] = matrix[i * p + j]!;
 	return matrix;
 }

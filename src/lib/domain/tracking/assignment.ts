@@ -17,57 +17,27 @@ export interface Assignment {
 	readonly pairs: readonly (readonly [row: number, column: number])[];
 	/** Sum of the costs of the pairs, plus what leaving rows and columns unpaired costs under the convention used */
 	readonly total: number;
-	/** False when another pairing costs the same */
-	readonly unique: boolean;
 }
 
-/** Costs closer than this count as equal when uniqueness is judged. */
-const SAME = 1e-9;
+/** Cost of every row (first index) with every column. */
+export type Costs = readonly (readonly number[])[];
 
-/** As many pairs as possible, then least total cost. Costs that are not finite are forbidden pairs. */
-export function assignMostPairs(costs: readonly (readonly number[])[], gate = Infinity): Assignment {
-	const sparse = sparseFrom(costs, gate);
-	const best = pairUp(sparse, mostPairsPrice(sparse));
-	const total = sumOf(costs, best);
-	const unique = best.every(([row, column]) => {
-		const without = withoutPair(sparse, row, column);
-		const other = pairUp(without, mostPairsPrice(without));
-		return other.length < best.length || sumOf(costs, other) > total + SAME;
-	});
-	return { pairs: best, total, unique };
+/** As many pairs as possible, then least total cost. Costs that are not finite, or above the gate, are forbidden pairs. */
+export function assignMostPairs(costs: Costs, gate = Infinity): Assignment {
+	const sparse = allowedPairs(costs, gate);
+	const pairs = pairUp(sparse, mostPairsPrice(sparse));
+	return { pairs, total: sumOf(costs, pairs) };
 }
 
 /**
  * Least total cost when every unpaired row and every unpaired column costs gate/2, so that a pair is kept only if it
- * costs less than leaving both out. Pairs above the gate and costs that are not finite are forbidden.
+ * costs no more than leaving both out. Pairs above the gate and costs that are not finite are forbidden.
  */
-export function assignWithinGate(costs: readonly (readonly number[])[], gate: number): Assignment {
-	const sparse = sparseFrom(costs, gate);
-	const unpaired = (pairs: readonly unknown[]) => (gate / 2) * (sparse.rows + sparse.columns - 2 * pairs.length);
-	const best = pairUp(sparse, gate);
-	const total = sumOf(costs, best) + unpaired(best);
-	const unique =
-		best.every(([row, column]) => {
-			const other = pairUp(withoutPair(sparse, row, column), gate);
-			return sumOf(costs, other) + unpaired(other) > total + SAME;
-		}) && !canAddForFree(costs, sparse, best, gate);
-	return { pairs: best, total, unique };
-}
-
-/** What nearest-first pairing would cost; only to show how far it is from the optimum. Rows, then columns, break ties. */
-export function computeGreedyTotal(costs: readonly (readonly number[])[]): number {
-	const all = costs.flatMap((row, i) => row.map((cost, j) => ({ cost, i, j }))).filter(({ cost }) => cost < Infinity);
-	all.sort((a, b) => a.cost - b.cost || a.i - b.i || a.j - b.j);
-	const rows = new Set<number>();
-	const columns = new Set<number>();
-	let total = 0;
-	for (const { cost, i, j } of all) {
-		if (rows.has(i) || columns.has(j)) continue;
-		rows.add(i);
-		columns.add(j);
-		total += cost;
-	}
-	return total;
+export function assignWithinGate(costs: Costs, gate: number): Assignment {
+	const sparse = allowedPairs(costs, gate);
+	const pairs = pairUp(sparse, gate);
+	const unpaired = sparse.rows + sparse.columns - 2 * pairs.length;
+	return { pairs, total: sumOf(costs, pairs) + (gate / 2) * unpaired };
 }
 
 /**
@@ -204,7 +174,7 @@ export function mostPairsPrice({ rows, columns, costs }: SparseCosts): number {
 	return Math.max(most, 0) + (most - least) * Math.min(rows, columns) + 1;
 }
 
-function sparseFrom(costs: readonly (readonly number[])[], gate: number): SparseCosts {
+export function allowedPairs(costs: Costs, gate: number): SparseCosts {
 	const rows = costs.length;
 	const columns = Math.max(0, ...costs.map((row) => row.length));
 	const starts = new Int32Array(rows + 1);
@@ -221,33 +191,8 @@ function sparseFrom(costs: readonly (readonly number[])[], gate: number): Sparse
 	return { rows, columns, starts, targets: Int32Array.from(targets), costs: Float64Array.from(kept) };
 }
 
-function withoutPair(problem: SparseCosts, row: number, column: number): SparseCosts {
-	const starts = problem.starts.map((start, r) => (r > row ? start - 1 : start));
-	const rest = (_: number, e: number) =>
-		e < problem.starts[row]! || e >= problem.starts[row + 1]! || problem.targets[e] !== column;
-	return { ...problem, starts, targets: problem.targets.filter(rest), costs: problem.costs.filter(rest) };
-}
-
 const pairUp = (problem: SparseCosts, price: number): [number, number][] =>
 	Array.from(solveSparse(problem, price), (column, row): [number, number] => [row, column]).filter(([, c]) => c >= 0);
 
-const sumOf = (costs: readonly (readonly number[])[], pairs: readonly (readonly [number, number])[]): number =>
+const sumOf = (costs: Costs, pairs: Assignment['pairs']): number =>
 	pairs.reduce((sum, [row, column]) => sum + costs[row]![column]!, 0);
-
-/** True when a pair exactly at the gate could join the pairing without changing its cost. */
-function canAddForFree(
-	costs: readonly (readonly number[])[],
-	{ rows, starts, targets }: SparseCosts,
-	pairs: readonly (readonly [number, number])[],
-	gate: number
-): boolean {
-	const usedRows = new Set(pairs.map(([row]) => row));
-	const usedColumns = new Set(pairs.map(([, column]) => column));
-	for (let row = 0; row < rows; row += 1) {
-		if (usedRows.has(row)) continue;
-		for (let e = starts[row]!; e < starts[row + 1]!; e += 1) {
-			if (!usedColumns.has(targets[e]!) && Math.abs(costs[row]![targets[e]!]! - gate) <= SAME) return true;
-		}
-	}
-	return false;
-}

@@ -16,7 +16,7 @@ export interface Matching {
 	readonly trackOf: Int32Array;
 	/** By measurement: index of the track this robot last used the same name for, or −1 */
 	readonly namedBefore: Int32Array;
-	/** By measurement: 1 when it is far outside anything expected of the track its name belonged to */
+	/** By measurement: 1 when its name was in use but its track went to another person of the scan, or is far away */
 	readonly moved: Uint8Array;
 }
 
@@ -66,11 +66,14 @@ export function matchPersons(
 
 	const namedBefore = new Int32Array(persons.length).fill(-1);
 	const moved = new Uint8Array(persons.length);
+	const taken = new Set(trackOf);
 	persons.forEach((person, j) => {
-		const before = expected[names.get(person.localId) ?? -1];
-		if (!before) return;
+		const e = names.get(person.localId);
+		if (e === undefined) return;
+		const before = expected[e]!;
 		namedBefore[j] = before.index;
-		moved[j] = Number(distanceSquared(before, person) / (before.variance + person.sd * person.sd) > FAR);
+		const far = distanceSquared(before, person) > FAR * (before.variance + person.sd * person.sd);
+		moved[j] = Number(trackOf[j] !== e && (far || taken.has(e)));
 	});
 	return { trackOf: trackOf.map((e) => expected[e]?.index ?? -1), namedBefore, moved };
 }

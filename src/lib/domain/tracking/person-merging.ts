@@ -17,6 +17,8 @@ export type RecentScans = ReadonlyMap<string, readonly RecentScan[]>;
 const VELOCITY_SLACK = 0.3;
 /** s since the last measurement after which a track is too vague to be told from its neighbours */
 const FRESH = 0.6;
+/** m nobody walks beyond within FRESH, with room for the distance at which tracks merge */
+const STRIDE = 2.5;
 
 export interface Merged {
 	readonly tracks: PersonTrack[];
@@ -39,10 +41,11 @@ export function mergeTracks(
 ): Merged {
 	const list: (PersonTrack | null)[] = [...tracks];
 	const measured = new Set(touched);
+	const others = othersNear(tracks, touched, measured, time);
 	let recent = scans;
 	for (const index of touched) {
 		const track = list[index]!;
-		const near = nearestTwin(track, list, measured, recent, time, rule);
+		const near = nearestTwin(track, list, others, recent, rule);
 		if (near < 0) {
 			if (track.closeTo) list[index] = { ...track, closeTo: null };
 			continue;
@@ -62,32 +65,54 @@ export function mergeTracks(
 	return { tracks: list.filter((track) => track !== null), scans: recent };
 }
 
+/** Tracks that any of the touched ones could be merged with. */
+function othersNear(
+	tracks: readonly PersonTrack[],
+	touched: readonly number[],
+	measured: ReadonlySet<number>,
+	time: number
+): number[] {
+	let [minX, minY, maxX, maxY] = [Infinity, Infinity, -Infinity, -Infinity];
+	for (const index of touched) {
+		const { x, y } = tracks[index]!;
+		if (x < minX) minX = x;
+		if (x > maxX) maxX = x;
+		if (y < minY) minY = y;
+		if (y > maxY) maxY = y;
+	}
+	const others: number[] = [];
+	for (let index = 0; index < tracks.length; index += 1) {
+		const { x, y, seenAt } = tracks[index]!;
+		if (x < minX - STRIDE || x > maxX + STRIDE || y < minY - STRIDE || y > maxY + STRIDE) continue;
+		if (time - seenAt <= FRESH && !measured.has(index)) others.push(index);
+	}
+	return others;
+}
+
 function nearestTwin(
 	track: PersonTrack,
 	list: readonly (PersonTrack | null)[],
-	measured: ReadonlySet<number>,
+	others: readonly number[],
 	scans: RecentScans,
-	time: number,
 	rule: TrackerRule
 ): number {
 	const gate = chiSquareGate(rule.gateProbability, 2);
 	let nearest = -1;
 	let nearestAt = rule.mergeWithin;
-	list.forEach((other, index) => {
-		if (!other || measured.has(index) || time - other.seenAt > FRESH) return;
-		// A first look without the square roots: nobody walks out of this box within FRESH.
-		if (Math.abs(other.x - track.x) > 3 || Math.abs(other.y - track.y) > 3) return;
+	for (const index of others) {
+		const other = list[index];
+		if (!other || Math.abs(other.x - track.x) > STRIDE || Math.abs(other.y - track.y) > STRIDE) continue;
 		const there = predictTrack(other, track.updatedAt, rule);
 		const distance = Math.hypot(there.x - track.x, there.y - track.y);
-		if (distance >= nearestAt) return;
+		if (distance >= nearestAt) continue;
 		const variance = track.covariance[0]! + there.variance + 2 * rule.alignmentSd * rule.alignmentSd;
-		if (distance * distance > gate * variance) return;
+		if (distance * distance > gate * variance) continue;
 		const slip = Math.hypot(there.vx - track.vx, there.vy - track.vy);
 		const slack = track.covariance[10]! + other.covariance[10]! + VELOCITY_SLACK * VELOCITY_SLACK;
-		if (slip * slip > gate * slack || seenApart(track, other, scans, time - rule.apartFor)) return;
+		if (slip * slip > gate * slack || seenApart(track, other, scans, track.updatedAt - rule.apartFor)) continue;
 		nearest = index;
 		nearestAt = distance;
-	});
+	}
 	return nearest;
 }
 

@@ -5,7 +5,7 @@
  * expected at its time, so that a person two robots report is one track from the first instant on.
  */
 
-import { diagonalCovariance, processNoise, update } from './kalman.ts';
+import { diagonalCovariance, processNoise, update, type KalmanState } from './kalman.ts';
 import { matchPersons } from './person-matching.ts';
 import { mergeTracks, type RecentScan, type RecentScans } from './person-merging.ts';
 import {
@@ -154,8 +154,6 @@ function usablePersons({ robot, persons }: PersonScan, rule: TrackerRule) {
 	return { persons: usable, dropped };
 }
 
-const sightingOf = ({ localId, x, y }: PersonMeasurement, at: number): Sighting => ({ localId, at, x, y });
-
 function newTrack(
 	id: number,
 	person: PersonMeasurement,
@@ -180,7 +178,7 @@ function newTrack(
 		bornAt: time,
 		hits,
 		confirmed: hits >= rule.confirmHits,
-		seenBy: new Map([[robot, sightingOf(person, time)]]),
+		seenBy: new Map([[robot, { localId: person.localId, at: time, x: person.x, y: person.y }]]),
 		misses: 0,
 		interval: 0,
 		closeTo: null
@@ -194,52 +192,67 @@ function withMeasurement(
 	time: number,
 	rule: TrackerRule
 ): PersonTrack {
-	const age = track.updatedAt - time;
 	const inTime = time - track.seenAt <= rule.confirmWithin;
 	const hits = inTime ? track.hits + 1 : 1;
-	const seenBy = new Map<string, Sighting>();
-	for (const [name, sighting] of track.seenBy) {
-		if (time - sighting.at <= rule.forgetAfter) seenBy.set(name, sighting);
-	}
-	const own = seenBy.get(robot);
-	if (!own || own.at <= time) seenBy.set(robot, sightingOf(person, time));
-	const known = {
-		...track,
-		seenBy,
+	const gap = time - track.seenAt;
+	const { x, y, vx, vy, covariance } = follow(track, person, robot, time, rule);
+	const newest = time >= track.updatedAt;
+	// Written out, not spread: this runs for every person of every scan.
+	return {
+		id: track.id,
+		x,
+		y,
+		vx,
+		vy,
+		covariance,
+		updatedAt: newest ? time : track.updatedAt,
+		updatedBy: newest ? robot : track.updatedBy,
+		seenAt: Math.max(track.seenAt, time),
+		bornAt: inTime || track.confirmed ? track.bornAt : time,
 		hits,
 		confirmed: track.confirmed || hits >= rule.confirmHits,
-		bornAt: inTime || track.confirmed ? track.bornAt : time,
-		misses: 0
+		seenBy: withSighting(track.seenBy, robot, person, time, rule),
+		misses: 0,
+		interval: gap > rule.instant ? gap : track.interval,
+		closeTo: track.closeTo
 	};
-	if (age > rule.lateLimit) return known;
+}
 
+/** The state with one more measurement in it, at the later of the two times. */
+function follow(
+	track: PersonTrack,
+	person: PersonMeasurement,
+	robot: string,
+	time: number,
+	rule: TrackerRule
+): KalmanState {
+	const age = track.updatedAt - time;
+	if (age > rule.lateLimit) return track;
 	const noise = person.sd * person.sd + mapNoise(track, person, robot, time, rule);
 	if (age > 0) {
 		// An older look at a newer state: carried along with the person, and the less sure for it.
-		const velocityVariance = track.covariance[10]! * age * age + processNoise(age, rule.q).position;
-		const { state } = update(
-			track,
-			person.x + age * track.vx,
-			person.y + age * track.vy,
-			round(noise + velocityVariance)
-		);
-		return { ...known, ...state };
+		const drift = track.covariance[10]! * age * age + processNoise(age, rule.q).position;
+		return update(track, person.x + age * track.vx, person.y + age * track.vy, round(noise + drift)).state;
 	}
 	const expected = coastTrack(track, time, rule.q);
 	const surprise = (person.x - expected.x) ** 2 + (person.y - expected.y) ** 2;
-	const gate = chiSquareGate(rule.gateProbability, 2);
 	// Outside the gate the person has turned more sharply than expected: trust the motion less, until it would fit.
-	const stretch = Math.max(1, (surprise / gate - noise) / expected.covariance[0]!);
-	if (stretch > 1) expected.covariance.forEach((value, k) => (expected.covariance[k] = value * stretch));
-	const { state } = update(expected, person.x, person.y, round(noise));
-	return {
-		...known,
-		...state,
-		updatedAt: time,
-		updatedBy: robot,
-		seenAt: time,
-		interval: time - track.seenAt > rule.instant ? time - track.seenAt : track.interval
-	};
+	const fitting = (surprise / chiSquareGate(rule.gateProbability, 2) - noise) / expected.covariance[0]!;
+	const covariance = fitting > 1 ? expected.covariance.map((value) => value * fitting) : expected.covariance;
+	return update({ ...expected, covariance }, person.x, person.y, round(noise)).state;
+}
+
+function withSighting(
+	seenBy: ReadonlyMap<string, Sighting>,
+	robot: string,
+	person: PersonMeasurement,
+	time: number,
+	{ forgetAfter }: TrackerRule
+): ReadonlyMap<string, Sighting> {
+	const kept = new Map(seenBy);
+	for (const [name, { at }] of kept) if (time - at > forgetAfter) kept.delete(name);
+	const own = kept.get(robot);
+	return own && own.at > time ? kept : kept.set(robot, { localId: person.localId, at: time, x: person.x, y: person.y });
 }
 
 /**

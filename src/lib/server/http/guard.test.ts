@@ -75,19 +75,32 @@ describe('the way on after signing in', () => {
 		expect(safeNext('/floors/a?select=robot:b#c')).toBe('/floors/a?select=robot:b#c');
 	});
 
-	it.each([null, '', 'floors', '//evil.example.org', '/\\evil.example.org', '/\t/evil.example.org', 'https://evil.example.org', 'javascript:alert(1)'])(
-		'is the start page instead of %j',
-		(next) => {
-			expect(safeNext(next)).toBe('/');
-		}
-	);
+	it.each([
+		null,
+		'',
+		'floors',
+		'//evil.example.org',
+		'/\\evil.example.org',
+		'/\t/evil.example.org',
+		'https://evil.example.org',
+		'javascript:alert(1)'
+	])('is the start page instead of %j', (next) => {
+		expect(safeNext(next)).toBe('/');
+	});
 
 	it('never leaves the server', () => {
 		const host = 'https://desk.example.org';
 		fc.assert(
-			fc.property(fc.oneof(fc.string(), fc.webUrl(), fc.string().map((rest) => `/${rest}`)), (next) => {
-				expect(new URL(safeNext(next), host).origin).toBe(host);
-			})
+			fc.property(
+				fc.oneof(
+					fc.string(),
+					fc.webUrl(),
+					fc.string().map((rest) => `/${rest}`)
+				),
+				(next) => {
+					expect(new URL(safeNext(next), host).origin).toBe(host);
+				}
+			)
 		);
 	});
 });

@@ -269,7 +269,9 @@ describe('whatever comes in, out comes a reason in words or an observation witho
 			expect(admission.rejection.detail.length).toBeLessThanOrEqual(300);
 		} else {
 			const said = admission.kind === 'observation' ? admission.observation : admission.answer;
-			expect(leaves(said).filter((leaf) => leaf === undefined || (typeof leaf === 'number' && !Number.isFinite(leaf)))).toEqual([]);
+			expect(
+				leaves(said).filter((leaf) => leaf === undefined || (typeof leaf === 'number' && !Number.isFinite(leaf)))
+			).toEqual([]);
 		}
 		return admission.ok;
 	};

@@ -3,7 +3,7 @@
 import { isUtf8 } from 'node:buffer';
 import type { z } from 'zod';
 import { CHANNELS, isChannel, MAX_PAYLOAD_BYTES, parseTopic, type Answer, type Channel } from '../../contracts/mqtt.ts';
-import type { Observation, RejectionReason } from '../../domain/engine/observation.ts';
+import type { RobotObservation, RejectionReason } from '../../domain/engine/observation.ts';
 import { observationOf, wellFormedAnswer, type Message } from './observe.ts';
 import { stepSequence, type SequenceState, type SequenceVerdict } from './sequence.ts';
 
@@ -23,7 +23,7 @@ export type Admission =
 			readonly ok: true;
 			readonly kind: 'observation';
 			readonly venue: string;
-			readonly observation: Observation;
+			readonly observation: RobotObservation;
 			/** How its number continues the channel; null for `connection`, which has none. */
 			readonly sequence: { readonly seq: number; readonly verdict: SequenceVerdict } | null;
 	  }

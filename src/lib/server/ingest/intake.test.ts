@@ -1,5 +1,5 @@
 import { expect, it } from 'vitest';
-import type { Observation } from '../../domain/engine/observation.ts';
+import type { RobotObservation } from '../../domain/engine/observation.ts';
 import type { Rejection } from './gate.ts';
 import { createIntake, type DuplicateCredential } from './intake.ts';
 
@@ -8,7 +8,7 @@ const OWN = 'elbowroom/v1/saltmarsh/porter-01';
 
 function setUp() {
 	const seen = {
-		observations: [] as Observation[],
+		observations: [] as RobotObservation[],
 		answers: [] as string[],
 		rejections: [] as Rejection[],
 		findings: [] as DuplicateCredential[]

@@ -1,7 +1,7 @@
 /** One message from the broker to whom it concerns: the gate, the watch for shared credentials and the log of what was refused. */
 
 import type { Answer } from '../../contracts/mqtt.ts';
-import type { Observation } from '../../domain/engine/observation.ts';
+import type { RobotObservation } from '../../domain/engine/observation.ts';
 import { createDuplicateWatch } from './duplicates.ts';
 import { createGate, type RobotLookup } from './gate.ts';
 import type { RejectedLog } from './rejected.ts';
@@ -17,7 +17,7 @@ export interface DuplicateCredential {
 export interface IntakeOptions {
 	readonly robots: RobotLookup;
 	readonly rejected: Pick<RejectedLog, 'record'>;
-	onObservation(venue: string, observation: Observation): void;
+	onObservation(venue: string, observation: RobotObservation): void;
 	onAnswer?(venue: string, robot: string, answer: Answer, receivedAt: number): void;
 	onDuplicate?(finding: DuplicateCredential): void;
 }

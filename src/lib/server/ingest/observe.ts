@@ -1,7 +1,7 @@
 /** Turns a checked message of the native contract into the domain's words: seconds, camel case, null for what is not there. */
 
 import type { Answer, Connection, People, Pose, State } from '../../contracts/mqtt.ts';
-import type { Observation } from '../../domain/engine/observation.ts';
+import type { RobotObservation } from '../../domain/engine/observation.ts';
 import { secondsFromMs } from '../../domain/units.ts';
 
 export type Message =
@@ -21,7 +21,7 @@ export interface Receipt {
  * The observation a message carries. Texts come out well-formed: a lone surrogate, which JSON can carry but neither
  * SQLite nor UTF-8 can, becomes U+FFFD.
  */
-export function observationOf(said: Message, receipt: Receipt): Observation {
+export function observationOf(said: Message, receipt: Receipt): RobotObservation {
 	const base = { ...receipt, robotTime: secondsFromMs(said.message.t) };
 	switch (said.channel) {
 		case 'pose': {

@@ -31,6 +31,9 @@ export async function readFloor(db: Kysely<Database>, key: string): Promise<Stor
 	return (await assemble(db, rows))[0];
 }
 
+export const floorExists = async (db: Kysely<Database>, key: string): Promise<boolean> =>
+	(await db.selectFrom('floor').select('id').where('key', '=', key).executeTakeFirst()) !== undefined;
+
 /** Names of all floors with their venues, in the order they are shown; at most `limit` of them. */
 export async function listFloors(db: Kysely<Database>, limit = 500) {
 	return db

@@ -13,10 +13,6 @@ export async function insertIncident(db: Kysely<Database>, incident: NewRow<'inc
 		.execute();
 }
 
-export async function linkIncidentToAlarm(db: Kysely<Database>, id: string, alarmId: number): Promise<void> {
-	await db.updateTable('incident').set({ alarm_id: alarmId }).where('id', '=', id).execute();
-}
-
 export async function changeIncidentKind(db: Kysely<Database>, id: string, kind: HaltKind): Promise<void> {
 	await db.updateTable('incident').set({ kind }).where('id', '=', id).execute();
 }

@@ -7,7 +7,10 @@ import type { Database, NewRow } from '../db/schema.ts';
 const ROWS = 1000;
 
 /** Adds density minutes. Means of two parts are weighted by the area and time they observed. */
-export async function addDensityMinutes(db: Kysely<Database>, rows: readonly NewRow<'density_minute'>[]): Promise<void> {
+export async function addDensityMinutes(
+	db: Kysely<Database>,
+	rows: readonly NewRow<'density_minute'>[]
+): Promise<void> {
 	for (let from = 0; from < rows.length; from += ROWS) {
 		await db
 			.insertInto('density_minute')
