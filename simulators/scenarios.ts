@@ -39,7 +39,12 @@ export interface Scenario {
 	/** Lifts stand still between these times, s. */
 	readonly liftOut: readonly [from: number, to: number] | null;
 	/** A part of one floor without radio. */
-	readonly radioHole: { readonly floor: number; readonly x: number; readonly y: number; readonly radius: number } | null;
+	readonly radioHole: {
+		readonly floor: number;
+		readonly x: number;
+		readonly y: number;
+		readonly radius: number;
+	} | null;
 	/** Share of messages replaced by rubbish. */
 	readonly rubbish: number;
 	/** One robot is sent into standing people who close round it. */
@@ -56,7 +61,7 @@ const demo: Scenario = {
 	curiosity: 0.002,
 	faults: {
 		...NO_FAULTS,
-		onlookers: 0.35,
+		onlookers: 0.25,
 		obstruction: 0.12,
 		localization: 0.06,
 		estop: 0.06,
@@ -81,24 +86,42 @@ const from = (key: string): Timetable => ({ ...demo.timetable, from: key });
 
 const SCENARIOS: Record<ScenarioName, Scenario> = {
 	day: demo,
-	'quiet-morning': { ...demo, timetable: { ...demo.timetable, compression: 1, from: 'quiet' }, faults: NO_FAULTS, firstOnlookersAt: null },
+	'quiet-morning': {
+		...demo,
+		timetable: { ...demo.timetable, compression: 1, from: 'quiet' },
+		faults: NO_FAULTS,
+		firstOnlookersAt: null
+	},
 	'doors-open': { ...demo, peak: [520, 120] },
 	'let-out': { ...demo, peak: [560, 120], timetable: { phases: DAY, compression: 15, from: 'let-out' } },
 	'lift-out': { ...demo, timetable: from('session-change'), liftOut: [20, 420] },
 	'wifi-hole': { ...demo, timetable: from('morning'), radioHole: { floor: 0, x: 20, y: 52, radius: 14 } },
-	'bad-clock': { ...demo, timetable: from('morning'), link: { ...MILD_LINK, clockOffset: 90, clockDrift: 200, delay: 0.03, jitter: 0.08 } },
+	'bad-clock': {
+		...demo,
+		timetable: from('morning'),
+		link: { ...MILD_LINK, clockOffset: 90, clockDrift: 200, delay: 0.03, jitter: 0.08 }
+	},
 	rubbish: {
 		...demo,
 		timetable: from('morning'),
 		link: { ...MILD_LINK, loss: 0.05, duplicate: 0.05, reorder: 0.05 },
 		rubbish: 0.03
 	},
-	stuck: { ...demo, timetable: from('quiet'), peak: [90, 20], curiosity: 0, faults: NO_FAULTS, firstOnlookersAt: null, stuck: true }
+	stuck: {
+		...demo,
+		timetable: from('quiet'),
+		peak: [90, 20],
+		curiosity: 0,
+		faults: NO_FAULTS,
+		firstOnlookersAt: null,
+		stuck: true
+	}
 };
 
 export const scenarioOf = (name: ScenarioName): Scenario => SCENARIOS[name];
 
-export const isScenarioName = (name: string): name is ScenarioName => (SCENARIO_NAMES as readonly string[]).includes(name);
+export const isScenarioName = (name: string): name is ScenarioName =>
+	(SCENARIO_NAMES as readonly string[]).includes(name);
 
 /** Sensor of a robot model by its letter: how far and how wide it looks. */
 export function viewOf(letter: string): Pick<SensorSettings, 'range' | 'fieldOfView'> {

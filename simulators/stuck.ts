@@ -4,10 +4,10 @@ import type { FloorWorld } from './core/floor-world.ts';
 import type { Vehicle } from './robots/vehicle.ts';
 
 /** Where it happens on the ground floor: open floor of the foyer, metres. */
-const START = { x: 30, y: 17 };
-const GOAL = { key: 'far-side', x: 52, y: 17 };
+const START = { x: 24, y: 18 };
+const GOAL = { key: 'far-side', x: 52, y: 18 };
 /** s after the start at which the crowd closes, and how long it stays. */
-const CLOSES_AT = 3;
+const CLOSES_AT = 5;
 const STAYS = 90;
 
 export class StuckScript {
@@ -23,7 +23,7 @@ export class StuckScript {
 		vehicle.place(START.x, START.y, 0);
 		const { life } = floor;
 		// Two loose rings with a lane along the robot's way, 2 m and 3 m out from where it will be when they close.
-		const centre = { x: START.x + 3.2, y: START.y };
+		const centre = { x: START.x + 5.4, y: START.y };
 		for (const [radius, count] of [
 			[2, 10],
 			[3, 14]

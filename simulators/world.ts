@@ -14,7 +14,7 @@ import { TruthKeeper } from './robots/truth-keeper.ts';
 import { Vehicle } from './robots/vehicle.ts';
 import type { Scenario } from './scenarios.ts';
 import { StuckScript } from './stuck.ts';
-import { Link, type Delivery } from './transport/link.ts';
+import { Link, type Delivery, type TrueClock } from './transport/link.ts';
 import type { FleetRobot, VenueModel } from './venue/model.ts';
 
 export interface WorldOptions {
@@ -24,6 +24,8 @@ export interface WorldOptions {
 	readonly seed: number;
 	/** s since 1970 at simulation time 0: what a perfect clock would show. */
 	readonly epoch: number;
+	/** Simulated seconds per second on the robots' clocks; speeds in messages grow with it. 1 unless a film is wanted. */
+	readonly pace?: number;
 }
 
 /** s between two looks of a robot's planner. */
@@ -36,6 +38,7 @@ export class World {
 	readonly agents: readonly Agent[];
 	readonly truth: TruthKeeper;
 	readonly scenario: Scenario;
+	readonly clock: TrueClock;
 	readonly #vehicles: readonly Vehicle[];
 	readonly #byFloor: Vehicle[][];
 	readonly #byKey: Map<string, Agent>;
@@ -44,10 +47,11 @@ export class World {
 	#steps = 0;
 	#firstOnlookers: number | null;
 
-	constructor({ venue, fleet, scenario, seed, epoch }: WorldOptions) {
+	constructor({ venue, fleet, scenario, seed, epoch, pace = 1 }: WorldOptions) {
 		const random = createRandom(seed);
 		this.#random = random.fork('world');
 		this.scenario = scenario;
+		this.clock = { epoch, pace };
 		this.floors = venue.floors.map(
 			(model, i) =>
 				new FloorWorld(model, random.fork(model.floor.key), {
@@ -61,8 +65,14 @@ export class World {
 		for (const floor of this.floors) floor.life.populate(now);
 		this.agents = fleet.map((robot, i) => {
 			const own = random.fork(robot.key);
-			const vehicle = new Vehicle(robot, i, this.floors, new Faults(scenario.faults, own.fork('faults')), own.fork('drive'));
-			const link = new Link(robot.key, scenario.link, epoch, own.fork('link'));
+			const vehicle = new Vehicle(
+				robot,
+				i,
+				this.floors,
+				new Faults(scenario.faults, own.fork('faults')),
+				own.fork('drive')
+			);
+			const link = new Link(robot.key, scenario.link, this.clock, own.fork('link'));
 			return new Agent(vehicle, link, scenario, own.fork('agent'));
 		});
 		this.#vehicles = this.agents.map(({ vehicle }) => vehicle);

@@ -55,7 +55,9 @@ export class FloorWorld {
 		const counts = this.model.floor.zones.map(() => 0);
 		for (let i = 0; i < this.people.end; i++) {
 			if (!this.people.alive[i]) continue;
-			const at = this.model.floor.zones.findIndex(({ polygon }) => isInsideRing(polygon.outer, this.people.x[i]!, this.people.y[i]!));
+			const at = this.model.floor.zones.findIndex(({ polygon }) =>
+				isInsideRing(polygon.outer, this.people.x[i]!, this.people.y[i]!)
+			);
 			if (at >= 0) counts[at]!++;
 		}
 		return counts.map((count, k) => (areas[k]! > 0 ? count / areas[k]! : NaN));

@@ -161,7 +161,10 @@ export function findRoute(grid: NavGrid, field: DistanceField, from: Point, goal
 		}
 		if (next === at) break;
 		at = next;
-		cells.push({ x: grid.x0 + ((at % cols) + 0.5) * grid.cell, y: grid.y0 + (Math.floor(at / cols) + 0.5) * grid.cell });
+		cells.push({
+			x: grid.x0 + ((at % cols) + 0.5) * grid.cell,
+			y: grid.y0 + (Math.floor(at / cols) + 0.5) * grid.cell
+		});
 	}
 	cells.push(goal);
 	return shorten(grid, cells);

@@ -22,7 +22,18 @@ const WIDTH = 4;
 /** @param persons number walking; @param seconds simulated after 20 s of settling */
 export function measureCorridor(persons: number, seconds: number, seed: number, dt = 0.1): CorridorResult {
 	const random = createRandom(seed);
-	const floor = { walkable: { outer: [[-2, 0], [LENGTH + 2, 0], [LENGTH + 2, WIDTH], [-2, WIDTH]] as const, holes: [] }, walls: [] };
+	const floor = {
+		walkable: {
+			outer: [
+				[-2, 0],
+				[LENGTH + 2, 0],
+				[LENGTH + 2, WIDTH],
+				[-2, WIDTH]
+			] as const,
+			holes: []
+		},
+		walls: []
+	};
 	const grid = createNavGrid(floor, 0.2);
 	const people = new Population(grid.walls.bounds, persons);
 	const walking = new Walking(people, grid, random.fork('walking'));

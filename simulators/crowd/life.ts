@@ -25,7 +25,15 @@ export interface LifeOptions {
 }
 
 /** s people stay: mean by kind of place. Chosen by us. */
-const DWELL: Record<Place['kind'], number> = { entrance: 0, stand: 70, audience: 400, counter: 0, table: 240, lift: 0, lounge: 110 };
+const DWELL: Record<Place['kind'], number> = {
+	entrance: 0,
+	stand: 70,
+	audience: 400,
+	counter: 0,
+	table: 240,
+	lift: 0,
+	lounge: 110
+};
 const MOST_WATCHERS = 4;
 
 interface Queue {
@@ -123,7 +131,14 @@ export class Life {
 
 	/** Adds one grown-up who stands at a point until `until` seconds. Returns the slot, −1 when the floor is full. */
 	place(x: number, y: number, until: number): number {
-		const slot = this.people.add({ x, y, speed: 1.3, radius: 0.2, yields: this.random.chance(this.options.yielding), group: 0 });
+		const slot = this.people.add({
+			x,
+			y,
+			speed: 1.3,
+			radius: 0.2,
+			yields: this.random.chance(this.options.yielding),
+			group: 0
+		});
 		if (slot < 0) return slot;
 		this.act[slot] = STAYING;
 		this.#until[slot] = until;
@@ -322,7 +337,9 @@ export class Life {
 				if (!this.random.chance(rate * dt)) return;
 				// Children stand right in the way, grown-ups keep to one side.
 				const ahead = Math.atan2(robot.vy, robot.vx);
-				const angle = this.#child[slot] ? ahead : ahead + this.random.between(0.6, 1.6) * (this.random.chance(0.5) ? 1 : -1);
+				const angle = this.#child[slot]
+					? ahead
+					: ahead + this.random.between(0.6, 1.6) * (this.random.chance(0.5) ? 1 : -1);
 				this.#watch(slot, r, angle, Math.min(40, this.random.exponential(9) + 3));
 				this.#watchers[r]!++;
 			});

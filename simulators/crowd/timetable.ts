@@ -22,15 +22,30 @@ export const DAY: readonly Phase[] = [
 		fill: 0.7,
 		wishes: { cloakroom: 3, lounge: 3, stand: 4, audience: 1, lift: 0.6, food: 0.5 }
 	},
-	{ key: 'morning', seconds: 6000, fill: 0.8, wishes: { stand: 6, audience: 4, lounge: 1, lift: 0.4, food: 0.3, leave: 0.1 } },
+	{
+		key: 'morning',
+		seconds: 6000,
+		fill: 0.8,
+		wishes: { stand: 6, audience: 4, lounge: 1, lift: 0.4, food: 0.3, leave: 0.1 }
+	},
 	{
 		key: 'session-change',
 		seconds: 2700,
 		fill: 0.9,
 		wishes: { stand: 4, lounge: 3, food: 2, lift: 1, audience: 1, leave: 0.2 }
 	},
-	{ key: 'lunch', seconds: 5400, fill: 0.95, wishes: { food: 4, table: 5, stand: 3, lounge: 2, lift: 0.5, leave: 0.3 } },
-	{ key: 'afternoon', seconds: 7200, fill: 0.75, wishes: { stand: 5, audience: 3, lounge: 1.5, food: 0.5, leave: 0.4 } },
+	{
+		key: 'lunch',
+		seconds: 5400,
+		fill: 0.95,
+		wishes: { food: 4, table: 5, stand: 3, lounge: 2, lift: 0.5, leave: 0.3 }
+	},
+	{
+		key: 'afternoon',
+		seconds: 7200,
+		fill: 0.75,
+		wishes: { stand: 5, audience: 3, lounge: 1.5, food: 0.5, leave: 0.4 }
+	},
 	{ key: 'concert', seconds: 6600, fill: 1, wishes: { audience: 10, lounge: 1.5, stand: 1, food: 0.6, lift: 0.2 } },
 	{ key: 'let-out', seconds: 1800, fill: 0.15, wishes: { leave: 6, cloakroom: 3, lounge: 0.5 } },
 	{ key: 'quiet', seconds: 2700, fill: 0.12, wishes: { stand: 2, lounge: 2, leave: 0.5 } }

@@ -188,8 +188,8 @@ export class Walking {
 			// Nobody walks into a machine, yielding or not.
 			if (wish > 0 && ahead > 0 && Math.abs(dx * wayY - dy * wayX) < robot.radius + people.radius[i]!) {
 				clear = Math.min(clear, Math.max(0, gap - 0.05));
-				if (gap < 1) forceX += (this.#side(i, dx, dy, wayX, wayY) * -wayY * (1 - gap)) * 1.5;
-				if (gap < 1) forceY += (this.#side(i, dx, dy, wayX, wayY) * wayX * (1 - gap)) * 1.5;
+				if (gap < 1) forceX += this.#side(i, dx, dy, wayX, wayY) * -wayY * (1 - gap) * 1.5;
+				if (gap < 1) forceY += this.#side(i, dx, dy, wayX, wayY) * wayX * (1 - gap) * 1.5;
 			}
 			if (people.yields[i] && people.mode[i] !== FOLLOWING) {
 				const forward = -(dx * robot.wantX + dy * robot.wantY);
@@ -292,7 +292,13 @@ export class Walking {
 		const h = grid.cell;
 		const here = distanceAt(grid, field, x, y);
 		const slope = (ahead: number, behind: number) =>
-			ahead === Infinity ? (behind === Infinity ? 0 : (here - behind) / h) : behind === Infinity ? (ahead - here) / h : (ahead - behind) / (2 * h);
+			ahead === Infinity
+				? behind === Infinity
+					? 0
+					: (here - behind) / h
+				: behind === Infinity
+					? (ahead - here) / h
+					: (ahead - behind) / (2 * h);
 		const gx = slope(distanceAt(grid, field, x + h, y), distanceAt(grid, field, x - h, y));
 		const gy = slope(distanceAt(grid, field, x, y + h), distanceAt(grid, field, x, y - h));
 		const g = Math.hypot(gx, gy);

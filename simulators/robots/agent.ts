@@ -54,7 +54,17 @@ export class Agent {
 		const floor = floors[this.vehicle.floor]!;
 		if (time >= this.#nextPose) {
 			this.#nextPose = Math.max(this.#nextPose + 1 / this.scenario.poseHz, time);
-			this.#send('pose', poseMessage(this.vehicle, this.#noisy(), this.link.stamp(time), this.link.nextSequence('pose')), time);
+			this.#send(
+				'pose',
+				poseMessage(
+					this.vehicle,
+					this.#noisy(),
+					this.link.clock.pace,
+					this.link.stamp(time),
+					this.link.nextSequence('pose')
+				),
+				time
+			);
 		}
 		if (time >= this.#nextPeople) {
 			this.#nextPeople = Math.max(this.#nextPeople + 1 / this.scenario.peopleHz, time);
@@ -87,11 +97,26 @@ export class Agent {
 
 	#look(floor: FloorWorld, time: number): void {
 		const { vehicle, sensor } = this;
-		const seen = sensor.look(vehicle.x, vehicle.y, vehicle.heading, floor.people, floor.walking.grid, time, time - this.#lastLook);
+		const seen = sensor.look(
+			vehicle.x,
+			vehicle.y,
+			vehicle.heading,
+			floor.people,
+			floor.walking.grid,
+			time,
+			time - this.#lastLook
+		);
 		this.#lastLook = time;
 		const { range, fieldOfView, velocityNoise } = sensor.settings;
-		const view = { range, fieldOfView, velocities: velocityNoise !== null };
-		const message = peopleMessage(vehicle.frame, seen, this.#error, view, this.link.stamp(time), this.link.nextSequence('people'));
+		const view = { range, fieldOfView, velocities: velocityNoise !== null, pace: this.link.clock.pace };
+		const message = peopleMessage(
+			vehicle.frame,
+			seen,
+			this.#error,
+			view,
+			this.link.stamp(time),
+			this.link.nextSequence('people')
+		);
 		this.#send('people', message, time);
 	}
 

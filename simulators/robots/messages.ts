@@ -7,6 +7,9 @@ import type { Vehicle } from './vehicle.ts';
 
 const mm = (value: number): number => Math.round(value * 1000) / 1000;
 
+/** m/s as sent: a film played fast shows everybody fast. Kept within what the contract takes. */
+const speedOf = (value: number, pace: number): number => mm(Math.max(-20, Math.min(20, value * pace)));
+
 /** m and rad by which the robot mistakes its own place; people it sees are shifted alike. */
 export interface PoseError {
 	readonly x: number;
@@ -14,7 +17,7 @@ export interface PoseError {
 	readonly heading: number;
 }
 
-export function poseMessage(vehicle: Vehicle, error: PoseError, t: number, seq: number): Pose {
+export function poseMessage(vehicle: Vehicle, error: PoseError, pace: number, t: number, seq: number): Pose {
 	const { frame, vx, vy } = vehicle;
 	const x = vehicle.x + error.x;
 	const y = vehicle.y + error.y;
@@ -25,9 +28,9 @@ export function poseMessage(vehicle: Vehicle, error: PoseError, t: number, seq: 
 		x: mm(frame.x(x, y)),
 		y: mm(frame.y(x, y)),
 		heading: mm(frame.heading(vehicle.heading + error.heading)),
-		vx: mm(frame.dx(vx, vy)),
-		vy: mm(frame.dy(vx, vy)),
-		speed: mm(vehicle.speed)
+		vx: speedOf(frame.dx(vx, vy), pace),
+		vy: speedOf(frame.dy(vx, vy), pace),
+		speed: speedOf(vehicle.speed, pace)
 	};
 }
 
@@ -35,7 +38,12 @@ export function peopleMessage(
 	frame: MapFrame,
 	seen: readonly Sighting[],
 	error: PoseError,
-	view: { readonly range: number; readonly fieldOfView: number | null; readonly velocities: boolean },
+	view: {
+		readonly range: number;
+		readonly fieldOfView: number | null;
+		readonly velocities: boolean;
+		readonly pace: number;
+	},
 	t: number,
 	seq: number
 ): People {
@@ -53,7 +61,12 @@ export function peopleMessage(
 				id: person.id,
 				x: mm(frame.x(x, y)),
 				y: mm(frame.y(x, y)),
-				...(view.velocities ? { vx: mm(frame.dx(person.vx, person.vy)), vy: mm(frame.dy(person.vx, person.vy)) } : {}),
+				...(view.velocities
+					? {
+							vx: speedOf(frame.dx(person.vx, person.vy), view.pace),
+							vy: speedOf(frame.dy(person.vx, person.vy), view.pace)
+						}
+					: {}),
 				sd: mm(person.sd)
 			};
 		})

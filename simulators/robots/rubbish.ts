@@ -4,7 +4,11 @@ import type { Channel } from '../../src/lib/contracts/mqtt.ts';
 import type { Random } from '../core/random.ts';
 
 /** Something to send instead of a good message. Text is sent as it is; objects as JSON. */
-export function rubbishFor(random: Random, channel: Channel, good: unknown): { channel: Channel | 'unknown'; payload: unknown } {
+export function rubbishFor(
+	random: Random,
+	channel: Channel,
+	good: unknown
+): { channel: Channel | 'unknown'; payload: unknown } {
 	const message = good as Record<string, unknown>;
 	const kinds: (() => { channel: Channel | 'unknown'; payload: unknown })[] = [
 		() => ({ channel, payload: JSON.stringify(message).slice(0, 20) }),

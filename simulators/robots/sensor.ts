@@ -63,7 +63,15 @@ export class Sensor {
 	}
 
 	/** @param elapsed s since the last look */
-	look(x: number, y: number, heading: number, people: Population, grid: NavGrid, time: number, elapsed: number): Sighting[] {
+	look(
+		x: number,
+		y: number,
+		heading: number,
+		people: Population,
+		grid: NavGrid,
+		time: number,
+		elapsed: number
+	): Sighting[] {
 		const { range, fieldOfView, noise, velocityNoise, dropout, idSwitch, peopleHide } = this.settings;
 		const random = this.#random;
 		const inView: [slot: number, distance: number, bearing: number][] = [];
@@ -136,7 +144,8 @@ function isHidden(inView: readonly [number, number, number][], k: number, people
 	for (let j = 0; j < k; j++) {
 		const [slot, near, other] = inView[j]!;
 		if (near > distance - 0.3) break;
-		if (Math.abs(angleBetween(bearing, other)) < Math.asin(Math.min(1, people.radius[slot]! / Math.max(near, 0.01)))) return true;
+		if (Math.abs(angleBetween(bearing, other)) < Math.asin(Math.min(1, people.radius[slot]! / Math.max(near, 0.01))))
+			return true;
 	}
 	return false;
 }

@@ -65,7 +65,8 @@ export class TruthKeeper {
 			return;
 		}
 		if (this.#quietSince[i]! < 0) this.#quietSince[i] = time;
-		if (!open && time - this.#quietSince[i]! >= SILENT_AFTER) this.#silent[i] = this.#note(i, 'silent', 'radio', this.#quietSince[i]!);
+		if (!open && time - this.#quietSince[i]! >= SILENT_AFTER)
+			this.#silent[i] = this.#note(i, 'silent', 'radio', this.#quietSince[i]!);
 	}
 
 	#note(i: number, kind: TrueHalt['kind'], cause: string, onset: number): TrueHalt {

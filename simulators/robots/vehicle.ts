@@ -67,6 +67,7 @@ export class Vehicle implements RobotBody {
 	#pinnedSince = -1;
 	#pinnedBy: 'people' | 'robots' = 'people';
 	#backOffUntil = -1;
+	#backOffHeading = 0;
 	#others: readonly Vehicle[] = [];
 	#taskNumber = 0;
 	#legStart = 0;
@@ -105,7 +106,8 @@ export class Vehicle implements RobotBody {
 
 	/** Error the robot itself reports, if any; it cannot drive with one. */
 	faultNow(time: number): 'estop' | 'localization' | 'breakdown' | null {
-		for (const name of ['estop', 'localization', 'breakdown'] as const) if (this.faults.isActive(name, time)) return name;
+		for (const name of ['estop', 'localization', 'breakdown'] as const)
+			if (this.faults.isActive(name, time)) return name;
 		return null;
 	}
 
@@ -146,7 +148,11 @@ export class Vehicle implements RobotBody {
 		this.#others = others;
 		this.#runPhase(dt, time, liftWorks);
 		const canDrive =
-			this.phase === 'driving' && this.task !== null && !this.paused && !this.isManual(time) && this.faultNow(time) === null;
+			this.phase === 'driving' &&
+			this.task !== null &&
+			!this.paused &&
+			!this.isManual(time) &&
+			this.faultNow(time) === null;
 		let targetSpeed = 0;
 		if (canDrive) {
 			this.battery = Math.max(0.02, this.battery - DRAIN * dt);
@@ -236,7 +242,9 @@ export class Vehicle implements RobotBody {
 		this.floor = floor;
 		this.frame = this.#frameOn(floor);
 		this.place(lift.x, lift.y, -Math.PI / 2);
-		const goal = [...this.floors[floor]!.model.goals, ...this.floors[floor]!.model.docks].find(({ key }) => key === task.goalKey);
+		const goal = [...this.floors[floor]!.model.goals, ...this.floors[floor]!.model.docks].find(
+			({ key }) => key === task.goalKey
+		);
 		if (!goal || !this.assign(goal, floor, time)) this.#rest(time, 5);
 	}
 
@@ -289,23 +297,33 @@ export class Vehicle implements RobotBody {
 		}
 		this.#noteBlocked(time, blocked !== null);
 		if (this.#ditherUntil > time) this.#dither(direction);
-		else if (this.cause === 'robots') this.#makeWay(time, direction);
+		else this.#makeWay(time, direction);
 		if (this.#backOffUntil > time) {
-			this.#plan.heading = direction + 2.3;
+			this.#plan.heading = this.#backOffHeading;
 			this.#plan.speed = 0.4;
 		}
 	}
 
-	/** Of two robots in each other's way the one later in the fleet backs off after a while. */
+	/** Backs off and tries again: from one or two people after a while; of two robots the one later in the fleet does. */
 	#makeWay(time: number, direction: number): void {
 		const since = Math.max(this.#blockedSince, this.#pinnedSince);
 		if (since < 0 || time - since < 2 || time < this.#backOffUntil + 4) return;
-		const first = this.#others.some(
-			(other) => other.floor === this.floor && other.index < this.index && Math.hypot(other.x - this.x, other.y - this.y) < 2.5
-		);
+		if (this.cause === 'people') {
+			let near = 0;
+			this.floors[this.floor]!.people.near(this.x, this.y, this.radius + 1.1, () => near++);
+			if (near > 2 || time - since < 4) return;
+		} else if (this.cause !== 'robots') return;
+		const first =
+			this.cause === 'people' ||
+			this.#others.some(
+				(other) =>
+					other.floor === this.floor && other.index < this.index && Math.hypot(other.x - this.x, other.y - this.y) < 2.5
+			);
 		const { driveGrid } = this.floors[this.floor]!;
-		const back = direction + 2.3;
-		if (first && driveGrid.isOpen(this.x, this.y, this.x + Math.cos(back), this.y + Math.sin(back))) this.#backOffUntil = time + 2.5;
+		const back = direction + (this.random.chance(0.5) ? 2.3 : -2.3);
+		this.#backOffHeading = back;
+		if (first && driveGrid.isOpen(this.x, this.y, this.x + Math.cos(back), this.y + Math.sin(back)))
+			this.#backOffUntil = time + 2.5;
 	}
 
 	#noteBlocked(time: number, blocked: boolean): void {
@@ -315,7 +333,13 @@ export class Vehicle implements RobotBody {
 		}
 		if (this.#blockedSince < 0) this.#blockedSince = time;
 		const waited = time - this.#blockedSince;
-		if (this.robot.planner === 'decoupled' && waited > 5 && this.#ditherUntil < time - 20 && this.random.chance(0.01)) {
+		if (
+			this.robot.planner === 'decoupled' &&
+			!this.holdTasks &&
+			waited > 5 &&
+			this.#ditherUntil < time - 20 &&
+			this.random.chance(0.01)
+		) {
 			this.#ditherUntil = time + this.random.between(8, 18);
 			this.#ditherTurn = this.random.chance(0.5) ? 1.5 : -1.5;
 		}
@@ -337,7 +361,15 @@ export class Vehicle implements RobotBody {
 		const out = this.#obstacles;
 		const people = this.floors[this.floor]!.people;
 		let count = 0;
-		const put = (dx: number, dy: number, vx: number, vy: number, radius: number, flexibility: number, person: number) => {
+		const put = (
+			dx: number,
+			dy: number,
+			vx: number,
+			vy: number,
+			radius: number,
+			flexibility: number,
+			person: number
+		) => {
 			if (count >= 64) return;
 			out.set([dx, dy, vx, vy, radius, flexibility, person], count++ * OBSTACLE_SIZE);
 		};
@@ -351,7 +383,15 @@ export class Vehicle implements RobotBody {
 		const pinned = this.#pinnedSince >= 0 && time - this.#pinnedSince > 3;
 		const flexibility = this.robot.planner === 'counting' && !pinned ? COUNTED_ON : 0;
 		people.near(this.x, this.y, 5, (slot) => {
-			put(people.x[slot]! - this.x, people.y[slot]! - this.y, people.vx[slot]!, people.vy[slot]!, PERSON_RADIUS, flexibility, 1);
+			put(
+				people.x[slot]! - this.x,
+				people.y[slot]! - this.y,
+				people.vx[slot]!,
+				people.vy[slot]!,
+				PERSON_RADIUS,
+				flexibility,
+				1
+			);
 		});
 		return count;
 	}

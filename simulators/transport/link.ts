@@ -20,7 +20,23 @@ export interface LinkSettings {
 	readonly reorder: number;
 }
 
-export const CLEAN_LINK: LinkSettings = { clockOffset: 0, clockDrift: 0, delay: 0, jitter: 0, loss: 0, duplicate: 0, reorder: 0 };
+/** What a perfect clock shows. Shared by all robots, so that a run that fell behind can be moved on as a whole. */
+export interface TrueClock {
+	/** s since 1970 at simulation time 0 */
+	epoch: number;
+	/** Simulated seconds per second shown: 2 plays the venue like a film at double speed. */
+	readonly pace: number;
+}
+
+export const CLEAN_LINK: LinkSettings = {
+	clockOffset: 0,
+	clockDrift: 0,
+	delay: 0,
+	jitter: 0,
+	loss: 0,
+	duplicate: 0,
+	reorder: 0
+};
 /** An ordinary well-kept network with time service. */
 export const MILD_LINK: LinkSettings = {
 	clockOffset: 0.02,
@@ -55,11 +71,10 @@ export class Link {
 	#lastReliable = 0;
 	readonly #random: Random;
 
-	/** @param epoch s since 1970 at simulation time 0 */
 	constructor(
 		readonly robot: string,
 		readonly settings: LinkSettings,
-		readonly epoch: number,
+		readonly clock: TrueClock,
 		random: Random
 	) {
 		this.#random = random;
@@ -69,7 +84,8 @@ export class Link {
 
 	/** The robot's clock, ms since the epoch. */
 	stamp(time: number): number {
-		return Math.round((this.epoch + time * (1 + this.drift) + this.offset) * 1000);
+		const { epoch, pace } = this.clock;
+		return Math.round((epoch + (time / pace) * (1 + this.drift) + this.offset) * 1000);
 	}
 
 	/** Next sequence number of a channel. */
@@ -99,7 +115,14 @@ export class Link {
 
 	/** The broker's word that the robot is gone. */
 	sendWill(payload: unknown, time: number): void {
-		this.#queue.push({ robot: this.robot, channel: 'connection', payload, sentAt: time, arrivesAt: time, byWill: true });
+		this.#queue.push({
+			robot: this.robot,
+			channel: 'connection',
+			payload,
+			sentAt: time,
+			arrivesAt: time,
+			byWill: true
+		});
 	}
 
 	/** Appends everything that has arrived by `time`; what is still on its way stays. */

@@ -22,7 +22,13 @@ const walls = [
 	...wallAlongX(25, 105, 120)
 ];
 
-const zone = (key: string, name: string, outer: Zone['polygon']['outer'], threshold: number | null, hidden = false): Zone => ({
+const zone = (
+	key: string,
+	name: string,
+	outer: Zone['polygon']['outer'],
+	threshold: number | null,
+	hidden = false
+): Zone => ({
 	key,
 	name,
 	polygon: { outer, holes: [] },
@@ -144,10 +150,7 @@ export const GALLERY: VenueFloor = {
 		walls,
 		edgesBlockSight: true,
 		zones,
-		waitingPlaces: [
-			{ x: lift.x, y: lift.y, radius: 2.2 },
-			...docks.map(({ x, y }) => ({ x, y, radius: 0.9 }))
-		],
+		waitingPlaces: [{ x: lift.x, y: lift.y, radius: 2.2 }, ...docks.map(({ x, y }) => ({ x, y, radius: 0.9 }))],
 		maps: {
 			'limpet-gallery': { scale: 1, rotation: 1.1034, tx: 22.8, ty: -7.15 },
 			'whelk-gallery': { scale: 1, rotation: -0.3319, tx: 3.02, ty: 44.71 },

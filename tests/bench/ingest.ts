@@ -73,8 +73,8 @@ async function startFleet(broker: TestBroker, names: readonly string[]) {
 		const login = { username, password: broker.secret(robot), clientId: username };
 		const client = await connectAsync(broker.robotUrl, { protocolVersion: 4, reconnectPeriod: 0, ...login });
 		clients.push(client);
-		publishForEver(client, robot, () => stopped);
 	}
+	clients.forEach((client, i) => publishForEver(client, names[i]!, () => stopped));
 	return {
 		async stop() {
 			stopped = true;
@@ -99,10 +99,12 @@ function publishForEver(client: MqttClient, robot: string, stopped: () => boolea
 	];
 	const topics = [robotTopic(VENUE, robot, 'pose'), robotTopic(VENUE, robot, 'people')];
 	let seq = 0;
+	// Once per turn of the event loop, so that one robot cannot keep the others from speaking.
+	const again = () => void setImmediate(next);
 	const next = () => {
 		if (stopped() || !client.connected) return;
 		const which = seq++ % 2;
-		client.publish(topics[which]!, `{"t":${Date.now()},"seq":${seq},${tails[which]}`, { qos: 0 }, next);
+		client.publish(topics[which]!, `{"t":${Date.now()},"seq":${seq},${tails[which]}`, { qos: 0 }, again);
 	};
 	next();
 }

@@ -22,11 +22,11 @@ const OLD_POSE_MS = 2000;
 export const poseAgeMs = (robot: LiveRobot, frameMs: number, now: number): number | null =>
 	robot.pose_age_ms === null ? null : Math.max(0, robot.pose_age_ms + Math.max(0, now - frameMs));
 
-/** `0.3 s`, `Position is 42 s old.` or `never received`. */
+/** `under 2 s old`, `42 s old` or `never received`; fresh positions do not count tenths, or every row would flicker. */
 export function describePose(robot: LiveRobot, frameMs: number, now: number): string {
 	const ms = poseAgeMs(robot, frameMs, now);
 	if (ms === null) return 'never received';
-	return ms < OLD_POSE_MS ? `${(ms / 1000).toFixed(1)}\u00a0s ago` : `${age(ms)} old`;
+	return ms < OLD_POSE_MS ? 'under 2\u00a0s old' : `${age(ms)} old`;
 }
 
 /** Room to move as two speeds toward the goal, or one phrase when it was not evaluated. */

@@ -1,4 +1,4 @@
-/** One robot on the plan: footprint to scale with a notch at its front, and a shape for each condition. */
+/** One robot on the plan: footprint to scale, pointed at its front, and a shape for each condition. */
 
 import type { Condition, LiveHalt, LiveRobot } from '../../contracts/live.ts';
 import { age } from '../ui/format.ts';
@@ -13,9 +13,19 @@ type Ctx = CanvasRenderingContext2D;
 
 /** px; a footprint is never drawn shorter, or nobody would find it on a plan of a large hall. */
 const LEAST_PX = 13;
+const LEAST_COMPACT_PX = 10;
+/** px per metre below which a whole floor is squeezed into a phone: marks are smaller and labels without words. */
+const COMPACT_BELOW = 5;
+/** px */
+const PIN_RADIUS = 9;
+const COMPACT_PIN_RADIUS = 7;
+
+export const isCompact = ({ pxPerM }: View): boolean => pxPerM < COMPACT_BELOW;
+export const pinRadius = (view: View): number => (isCompact(view) ? COMPACT_PIN_RADIUS : PIN_RADIUS);
 
 /** How many times larger than true scale robots of this length are drawn, 1 when to scale. */
-export const enlargement = (view: View, length: number): number => Math.max(1, LEAST_PX / (length * view.pxPerM));
+export const enlargement = (view: View, length: number): number => 
+	Math.max(1, (isCompact(view) ? LEAST_COMPACT_PX : LEAST_PX) / (length * view.pxPerM));
 
 /** px from the middle of a robot to the outside of its mark. */
 export const reachPx = (view: View, { length, width }: RobotShape): number =>
@@ -43,12 +53,12 @@ export function drawRobot(
 ): void {
 	const grow = enlargement(view, shape.length);
 	const length = shape.length * view.pxPerM * grow;
-	const width = Math.max(7, shape.width * view.pxPerM * grow);
+	const width = Math.max(6, shape.width * view.pxPerM * grow);
 	ctx.save();
 	ctx.translate(screenX(view, at.x), screenY(view, at.y));
-	if (selected) drawRing(ctx, reachPx(view, shape) + 7, 2.5, ink.tide, ink);
+	if (selected) drawRing(ctx, reachPx(view, shape) + 9, 2.5, ink.tide, ink);
 	if (robot.condition === 'halted' || robot.condition === 'fault')
-		drawRing(ctx, reachPx(view, shape) + 2.5, 3.5, ink.alert, ink);
+		drawRing(ctx, reachPx(view, shape) + (isCompact(view) ? 2.5 : 4), isCompact(view) ? 2.5 : 3.5, ink.alert, ink);
 
 	ctx.rotate(-(Number.isNaN(at.heading) ? 0 : at.heading));
 	traceFootprint(ctx, length, width, !Number.isNaN(at.heading));
@@ -69,8 +79,7 @@ export function drawRobot(
 }
 
 /** The pin of an open incident: a stem from where it began to a disc with the halt's letter. */
-export function drawPin(ctx: Ctx, x: number, y: number, lift: number, halt: LiveHalt, ink: Ink, selected: boolean): void {
-	const radius = selected ? 11 : 9;
+export function drawPin(ctx: Ctx, x: number, y: number, lift: number, radius: number, halt: LiveHalt, ink: Ink): void {
 	const top = y - lift - radius;
 	ctx.beginPath();
 	ctx.moveTo(x, y);
@@ -86,7 +95,7 @@ export function drawPin(ctx: Ctx, x: number, y: number, lift: number, halt: Live
 	ctx.arc(x, top, radius, 0, 7);
 	ctx.fillStyle = ink.alert;
 	ctx.fill();
-	ctx.font = `700 12px ${ink.sans}`;
+	ctx.font = `700 ${radius + 3}px ${ink.sans}`;
 	ctx.textAlign = 'center';
 	ctx.textBaseline = 'middle';
 	ctx.fillStyle = ink.onFill;
@@ -153,7 +162,7 @@ const LOOKS: Record<Condition, (ink: Ink) => Look> = {
 	silent: (ink) => ({ fill: 'transparent', line: ink.alert })
 };
 
-/** Rounded box, its front cut to a shallow arrow with a notch; without a heading a plain box. */
+/** Pointed at its front and notched at its rear, inside the true footprint; without a heading a plain box. */
 function traceFootprint(ctx: Ctx, length: number, width: number, headed: boolean): void {
 	const [l, w] = [length / 2, width / 2];
 	ctx.beginPath();
@@ -161,15 +170,17 @@ function traceFootprint(ctx: Ctx, length: number, width: number, headed: boolean
 		ctx.roundRect(-l, -w, length, width, Math.min(3, w));
 		return;
 	}
+	const shoulder = l - Math.min(w, l * 0.8);
 	ctx.moveTo(-l, -w);
-	ctx.lineTo(l, -w);
-	ctx.lineTo(l - w * 0.75, 0);
-	ctx.lineTo(l, w);
+	ctx.lineTo(shoulder, -w);
+	ctx.lineTo(l, 0);
+	ctx.lineTo(shoulder, w);
 	ctx.lineTo(-l, w);
+	ctx.lineTo(-l + w * 0.35, 0);
 	ctx.closePath();
 }
 
-/** Two bars for paused, one dot for waiting, a plus for charging, a hand’s cross-line for manual. */
+/** Two bars for paused, one dot for waiting, a plus for charging. */
 function drawSign(ctx: Ctx, condition: Condition, size: number, colour: string): void {
 	const s = Math.max(2, size * 0.22);
 	ctx.fillStyle = colour;

@@ -2,7 +2,10 @@
 
 import { density } from '../ui/format.ts';
 import type { Ink } from './ink.ts';
-import { screenX, screenY, type View } from './projection.ts';
+import { isCompact } from './draw-robots.ts';
+import type { Box } from './place-labels.ts';
+import type { PlanZone } from './plan.ts';
+import { boundsOf, screenX, screenY, type View } from './projection.ts';
 import type { Scene, SceneZone } from './scene.ts';
 import type { Ring } from '../../domain/geometry/types.ts';
 
@@ -25,8 +28,11 @@ export function drawZones(ctx: Ctx, view: View, scene: Scene, ink: Ink, selected
 	}
 }
 
-/** Names last, so that neither people nor isolines run through them. */
-export function drawZoneNames(ctx: Ctx, view: View, scene: Scene, ink: Ink, selected: string | null): void {
+/**
+ * Names over people and isolines. Returns where it wrote, so that robots' labels keep off.
+ */
+export function drawZoneNames(ctx: Ctx, view: View, scene: Scene, ink: Ink, selected: string | null): Box[] {
+	const written: Box[] = [];
 	ctx.textAlign = 'center';
 	ctx.textBaseline = 'middle';
 	ctx.lineJoin = 'round';
@@ -38,17 +44,23 @@ export function drawZoneNames(ctx: Ctx, view: View, scene: Scene, ink: Ink, sele
 		const above = entry.live?.above_threshold ?? false;
 		const name = entry.zone.name;
 		const figures = figuresOf(entry);
-		ctx.font = `600 13px ${ink.sans}`;
-		const fits = ctx.measureText(name).width <= room;
-		if (fits) write(ctx, name, x, y - 8, entry.zone.key === selected ? ink.tide : ink.ink, ink);
+		const compact = isCompact(view);
+		ctx.font = `600 ${compact ? 11 : 13}px ${ink.sans}`;
+		const fits = ctx.measureText(name).width <= room && (!compact || heightOf(entry) * view.pxPerM > 34);
+		if (fits) {
+			const width = ctx.measureText(name).width;
+			written.push({ x: x - width / 2, y: y - 15, w: width, h: 30 });
+			write(ctx, name, x, y - 8, entry.zone.key === selected ? ink.tide : ink.ink, ink);
+		}
 		ctx.font = `${above ? 600 : 400} 12px ${ink.sans}`;
-		if (fits || (above && ctx.measureText(figures).width <= room + 16))
+		if ((fits && !compact) || (above && ctx.measureText(figures).width <= room + 16))
 			write(ctx, figures, x, fits ? y + 8 : y, above ? ink.alert : ink.muted, ink);
 	}
 	ctx.font = `italic 12px ${ink.sans}`;
 	for (const { x, y, text } of scene.plan.labels)
 		if (view.pxPerM > 5) write(ctx, text, screenX(view, x), screenY(view, y), ink.muted, ink);
 	ctx.textAlign = 'left';
+	return written;
 }
 
 function figuresOf({ zone, live }: SceneZone): string {
@@ -87,14 +99,17 @@ function traceRing(ctx: Ctx, view: View, ring: Ring): void {
 	ctx.closePath();
 }
 
-const widths = new WeakMap<object, number>();
+const sizes = new WeakMap<object, { width: number; height: number }>();
 
-/** Width of the zone's box, m. */
-function widthOf({ zone }: SceneZone): number {
-	let width = widths.get(zone);
-	if (width === undefined) {
-		const xs = zone.polygon.outer.map(([x]) => x);
-		widths.set(zone, (width = Math.max(...xs) - Math.min(...xs)));
+const widthOf = ({ zone }: SceneZone): number => sizeOf(zone).width;
+const heightOf = ({ zone }: SceneZone): number => sizeOf(zone).height;
+
+/** Of the zone's box, m. */
+function sizeOf(zone: PlanZone): { width: number; height: number } {
+	let size = sizes.get(zone);
+	if (size === undefined) {
+		const { minX, minY, maxX, maxY } = boundsOf(zone.polygon.outer);
+		sizes.set(zone, (size = { width: maxX - minX, height: maxY - minY }));
 	}
-	return width;
+	return size;
 }

@@ -37,4 +37,10 @@ describe('computeLabelPoint', () => {
 		const p = computeLabelPoint(polygon);
 		expect(containsPoint(polygon, p.x, p.y)).toBe(true);
 	});
+
+	it('keeps off what stands on the floor', () => {
+		const shaft = square(4, 4, 4);
+		const p = computeLabelPoint({ outer: square(0, 0, 12), holes: [] }, [shaft]);
+		expect(containsPoint({ outer: shaft, holes: [] }, p.x, p.y)).toBe(false);
+	});
 });

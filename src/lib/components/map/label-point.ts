@@ -1,6 +1,6 @@
 /** Where the name of an area is written. */
 
-import type { Point, Polygon, Ring } from '../../domain/geometry/types.ts';
+import type { Bounds, Point, Polygon, Ring } from '../../domain/geometry/types.ts';
 import { boundsOf } from './projection.ts';
 
 const GRID = 24;
@@ -8,11 +8,13 @@ const GRID = 24;
 /**
  * A point well inside the polygon: of a 24 × 24 grid over its box, the one farthest from every edge, preferring the
  * middle among equals so that names of rectangles are centred. The first corner when the polygon has no inside.
+ *
+ * @param obstacles rings that a name should not be written on
  */
-export function computeLabelPoint(polygon: Polygon): Point {
+export function computeLabelPoint(polygon: Polygon, obstacles: readonly Ring[] = []): Point {
 	const box = boundsOf(polygon.outer);
 	const middle = { x: (box.minX + box.maxX) / 2, y: (box.minY + box.maxY) / 2 };
-	const size = Math.hypot(box.maxX - box.minX, box.maxY - box.minY) || 1;
+	const near = obstacles.filter((ring) => meets(boundsOf(ring), box));
 	let best: Point | null = null;
 	let bestScore = -Infinity;
 	for (let i = 1; i < GRID; i++) {
@@ -21,9 +23,9 @@ export function computeLabelPoint(polygon: Polygon): Point {
 				x: box.minX + ((box.maxX - box.minX) * i) / GRID,
 				y: box.minY + ((box.maxY - box.minY) * j) / GRID
 			};
-			if (!containsPoint(polygon, p.x, p.y)) continue;
-			const edge = Math.min(...[polygon.outer, ...polygon.holes].map((ring) => distanceToRing(ring, p)));
-			const score = edge - 0.15 * Math.hypot(p.x - middle.x, p.y - middle.y) - size * 1e-6;
+			if (!containsPoint(polygon, p.x, p.y) || near.some((ring) => inRing(ring, p.x, p.y))) continue;
+			const edge = Math.min(...[polygon.outer, ...polygon.holes, ...near].map((ring) => distanceToRing(ring, p)));
+			const score = edge - 0.15 * Math.hypot(p.x - middle.x, p.y - middle.y);
 			if (score > bestScore) [best, bestScore] = [p, score];
 		}
 	}
@@ -34,6 +36,8 @@ export function computeLabelPoint(polygon: Polygon): Point {
 export function containsPoint(polygon: Polygon, x: number, y: number): boolean {
 	return inRing(polygon.outer, x, y) && !polygon.holes.some((hole) => inRing(hole, x, y));
 }
+
+const meets = (a: Bounds, b: Bounds) => a.minX < b.maxX && b.minX < a.maxX && a.minY < b.maxY && b.minY < a.maxY;
 
 function inRing(ring: Ring, x: number, y: number): boolean {
 	let inside = false;

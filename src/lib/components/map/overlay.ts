@@ -2,10 +2,10 @@
 
 import type { LiveHalt } from '../../contracts/live.ts';
 import type { Related, Selection } from '../../state/selection.ts';
-import { describeOnPlan, drawGoal, drawPin, drawRobot, drawTrail, reachPx } from './draw-robots.ts';
+import { describeOnPlan, drawGoal, drawPin, drawRobot, drawTrail, isCompact, pinRadius, reachPx } from './draw-robots.ts';
 import { drawZoneNames, drawZones, write } from './draw-zones.ts';
 import type { Ink } from './ink.ts';
-import { placeLabels, type LabelWish, type Side } from './place-labels.ts';
+import { placeLabels, type Box, type LabelWish, type Side } from './place-labels.ts';
 import type { RobotShape } from './plan.ts';
 import { floorAt, screenX, screenY, type View } from './projection.ts';
 import type { Scene } from './scene.ts';
@@ -43,8 +43,8 @@ export class Overlay {
 			if (at) drawTrail(ctx, view, scene.trails.of(key), at, nowMs, ink);
 		}
 		this.#drawPeople(ctx, view, ink, nowMs);
-		drawZoneNames(ctx, view, scene, ink, related.zone);
-		this.#drawRobots(ctx, view, ink, related, nowMs);
+		const written = drawZoneNames(ctx, view, scene, ink, related.zone);
+		this.#drawRobots(ctx, view, ink, related, nowMs, written);
 	}
 
 	/** What is at a pixel: the nearest pin or robot, else the zone, else nothing. */
@@ -90,7 +90,7 @@ export class Overlay {
 		ctx.globalAlpha = 1;
 	}
 
-	#drawRobots(ctx: CanvasRenderingContext2D, view: View, ink: Ink, related: Related, nowMs: number): void {
+	#drawRobots(ctx: CanvasRenderingContext2D, view: View, ink: Ink, related: Related, nowMs: number, written: readonly Box[]): void {
 		const { scene } = this;
 		const serverNow = scene.frameMs + nowMs - scene.receivedMs;
 		const halts = new Map(scene.halts.map((halt) => [halt.robot, halt]));
@@ -109,30 +109,36 @@ export class Overlay {
 			drawRobot(ctx, view, robot, shape, at, ink, selected);
 			const reach = reachPx(view, shape);
 			this.#spots.push({ selection: { kind: 'robot', id: robot.key }, x, y, radius: reach });
-			if (halt) pins.push({ halt, x: screenX(view, halt.x_m), y: screenY(view, halt.y_m), lift: reach + 9 });
-			const words = describeOnPlan(robot, halt, serverNow, scene.frameMs);
+			if (halt) pins.push({ halt, x: screenX(view, halt.x_m), y: screenY(view, halt.y_m), lift: reach + (isCompact(view) ? 5 : 9) });
+			const words = isCompact(view) && !selected ? '' : describeOnPlan(robot, halt, serverNow, scene.frameMs);
 			const text = words ? `${robot.mark}\u2002${words}` : robot.mark;
 			const bad = halt !== undefined || robot.condition === 'fault' || robot.condition === 'silent';
 			texts.set(robot.key, { text, bad });
-			const gap = reach + (bad || selected ? 9 : 4);
+			const gap = reach + (bad || selected ? (isCompact(view) ? 6 : 9) : 4);
 			wishes.push({ key: robot.key, x, y, gap, width: ctx.measureText(text).width, height: 14, must: bad || selected });
 		}
+		const taken = [...written];
 		for (const { halt, x, y, lift } of pins) {
 			const selected = related.incidents.has(halt.incident);
-			drawPin(ctx, x, y, lift, halt, ink, selected);
-			this.#spots.push({ selection: { kind: 'incident', id: halt.incident }, x, y: y - lift - 9, radius: 12 });
+			const radius = pinRadius(view) + (selected ? 2 : 0);
+			drawPin(ctx, x, y, lift, radius, halt, ink);
+			const top = y - lift - radius;
+			this.#spots.push({ selection: { kind: 'incident', id: halt.incident }, x, y: top, radius: 12 });
+			taken.push({ x: x - radius, y: top - radius, w: 2 * radius, h: 2 * radius + lift });
 		}
 		wishes.sort((a, b) => Number(b.must) - Number(a.must));
-		this.#writeLabels(ctx, ink, wishes, texts);
+		this.#writeLabels(ctx, view, ink, wishes, texts, taken);
 	}
 
 	#writeLabels(
 		ctx: CanvasRenderingContext2D,
+		view: View,
 		ink: Ink,
 		wishes: readonly LabelWish[],
-		texts: ReadonlyMap<string, { text: string; bad: boolean }>
+		texts: ReadonlyMap<string, { text: string; bad: boolean }>,
+		written: readonly Box[]
 	): void {
-		const placed = placeLabels(wishes, this.#sides);
+		const placed = placeLabels(wishes, this.#sides, written, view);
 		this.#sides = new Map(placed.map(({ key, side }) => [key, side]));
 		ctx.font = `600 12px ${ink.sans}`;
 		ctx.textBaseline = 'middle';

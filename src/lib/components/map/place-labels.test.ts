@@ -23,4 +23,14 @@ describe('placeLabels', () => {
 		expect(sides(crowd).length).toBeLessThan(12);
 		expect(sides([...crowd, wish('halted', 13, 9, true)]).some((label) => label.startsWith('halted'))).toBe(true);
 	});
+
+	it('stays inside the view', () => {
+		const placed = placeLabels([wish('a', 190, 50, true)], new Map(), [], { width: 200, height: 100 });
+		expect(placed[0]?.side).toBe('left');
+	});
+
+	it('keeps off what is written already', () => {
+		const placed = placeLabels([wish('a', 100, 50)], new Map(), [{ x: 105, y: 40, w: 60, h: 20 }]);
+		expect(placed[0]?.side).toBe('left');
+	});
 });

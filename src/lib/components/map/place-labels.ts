@@ -23,7 +23,8 @@ export interface PlacedLabel {
 	readonly y: number;
 }
 
-interface Box {
+export interface Box {
+	/** px, upper left corner */
 	readonly x: number;
 	readonly y: number;
 	readonly w: number;
@@ -34,22 +35,42 @@ const SIDES: readonly Side[] = ['right', 'left', 'below', 'above'];
 
 /**
  * Places the wishes in the order given, each on the first free side, trying the side it had before first so that
- * labels do not hop. One without a free side is left out, unless it must be written: then it goes to the right.
+ * labels do not hop. One without a free side is left out, unless it must be written: then it goes where it covers
+ * least.
+ *
+ * @param written boxes that are written on already
+ * @param view px; labels stay inside
  */
-export function placeLabels(wishes: readonly LabelWish[], before: ReadonlyMap<string, Side>): PlacedLabel[] {
-	const taken: Box[] = wishes.map(({ x, y, gap }) => ({ x: x - gap / 2, y: y - gap / 2, w: gap, h: gap }));
+export function placeLabels(
+	wishes: readonly LabelWish[],
+	before: ReadonlyMap<string, Side>,
+	written: readonly Box[] = [],
+	view: { readonly width: number; readonly height: number } = { width: Infinity, height: Infinity }
+): PlacedLabel[] {
+	const taken: Box[] = [...written, ...wishes.map(({ x, y, gap }) => ({ x: x - gap / 2, y: y - gap / 2, w: gap, h: gap }))];
 	const placed: PlacedLabel[] = [];
 	for (const wish of wishes) {
 		const had = before.get(wish.key);
 		const order = had ? [had, ...SIDES.filter((side) => side !== had)] : SIDES;
-		const free = order.find((side) => !taken.some((box) => overlaps(box, boxAt(wish, side))));
+		const inside = order.filter((side) => isInside(boxAt(wish, side), view));
+		const free = inside.find((side) => !taken.some((box) => overlaps(box, boxAt(wish, side))));
 		if (!free && !wish.must) continue;
-		const side = free ?? had ?? 'right';
+		const side = free ?? leastCovered(wish, inside, taken);
 		const box = boxAt(wish, side);
 		taken.push(box);
 		placed.push({ key: wish.key, side, x: box.x, y: box.y + box.h / 2 });
 	}
 	return placed;
+}
+
+function leastCovered(wish: LabelWish, sides: readonly Side[], taken: readonly Box[]): Side {
+	let best: Side = 'right';
+	let least = Infinity;
+	for (const side of sides) {
+		const covered = taken.reduce((sum, box) => sum + sharedArea(box, boxAt(wish, side)), 0);
+		if (covered < least) [best, least] = [side, covered];
+	}
+	return best;
 }
 
 function boxAt({ x, y, gap, width: w, height: h }: LabelWish, side: Side): Box {
@@ -65,4 +86,13 @@ function boxAt({ x, y, gap, width: w, height: h }: LabelWish, side: Side): Box {
 	}
 }
 
-const overlaps = (a: Box, b: Box) => a.x < b.x + b.w && b.x < a.x + a.w && a.y < b.y + b.h && b.y < a.y + a.h;
+const overlaps = (a: Box, b: Box) => sharedArea(a, b) > 0;
+
+function sharedArea(a: Box, b: Box): number {
+	const w = Math.min(a.x + a.w, b.x + b.w) - Math.max(a.x, b.x);
+	const h = Math.min(a.y + a.h, b.y + b.h) - Math.max(a.y, b.y);
+	return w > 0 && h > 0 ? w * h : 0;
+}
+
+const isInside = ({ x, y, w, h }: Box, view: { readonly width: number; readonly height: number }) =>
+	view.width === Infinity || (x >= 0 && y >= 0 && x + w <= view.width && y + h <= view.height);

@@ -33,8 +33,12 @@ export interface PlanView {
 	pan(dx: number, dy: number): void;
 	zoom(by: number): void;
 	fit(): void;
-	/** Brings a point of the floor into sight; stays where it is when the point is in sight already. */
-	show(x: number, y: number): void;
+	/**
+	 * Brings a point of the floor into sight; stays where it is when the point is in sight already.
+	 *
+	 * @param covered px at the right edge that something lies over
+	 */
+	show(x: number, y: number, covered: number): void;
 	close(): void;
 }
 
@@ -131,8 +135,9 @@ export function openPlanView(library: Library, options: Options): PlanView {
 			moved = false;
 			fit(true);
 		},
-		show: (x, y) => {
-			if (!inSight(viewNow(), margins, x, y)) map.easeTo({ center: toLngLat(x, y), animate: !still.matches, duration: 300 });
+		show: (x, y, covered) => {
+			if (inSight(viewNow(), { ...margins, right: Math.max(margins.right, covered) }, x, y)) return;
+			map.easeTo({ center: toLngLat(x, y), offset: [-covered / 2, 0], animate: !still.matches, duration: 300 });
 		},
 		close: () => {
 			closed = true;

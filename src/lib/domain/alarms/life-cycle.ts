@@ -120,12 +120,8 @@ export function stepAlarm(alarm: AlarmCore, act: AlarmAct, longestShelving = LON
 	return { ...outcome, changes: compare(alarm, outcome.alarm, act) };
 }
 
-function compare(
-	before: AlarmCore,
-	after: AlarmCore,
-	{ type: act, at, by = null, reason = null }: AlarmAct
-): AlarmChange[] {
-	const told = { act, at, by, reason };
+function compare(before: AlarmCore, after: AlarmCore, act: AlarmAct): AlarmChange[] {
+	const told = { act: act.type, at: act.at, by: act.by ?? null, reason: act.reason ?? null };
 	const changes: AlarmChange[] = [];
 	if (before.state !== after.state) changes.push({ what: 'state', from: before.state, to: after.state, ...told });
 	const withheldAlike =

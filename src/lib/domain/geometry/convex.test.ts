@@ -11,6 +11,18 @@ describe('clipping', () => {
 		expect(flatArea(clipHalfPlane(square, 1, 0, 0))).toBe(2);
 	});
 
+	it('leaves no edge of rounding length, along which nothing could be clipped', () => {
+		const cell = clipHalfPlane(square, 1, 1, 2 - 1e-14);
+		expect(cell).toBe(square);
+		const doubled = [-1, -1, 1, -1, 1, 1, 1 + 1e-16, 1 - 1e-16, -1, 1];
+		expect(flatArea(clipToConvex(rectangle(-3, -3, 3, 3), doubled))).toBeCloseTo(4, 12);
+	});
+
+	it('finds nothing inside a speck', () => {
+		const speck = [0, 0, 1e-14, 0, 1e-14, 1e-15, 0, 1e-15];
+		expect(clipToConvex(rectangle(-3, -3, 3, 3), speck)).toEqual([]);
+	});
+
 	it('measures a concave ring exactly although the cut leaves edges there and back', () => {
 		const u = [0, 0, 3, 0, 3, 3, 2, 3, 2, 1, 1, 1, 1, 3, 0, 3];
 		expect(flatArea(clipToConvex(u, rectangle(0, 2, 3, 3)))).toBeCloseTo(2, 12);

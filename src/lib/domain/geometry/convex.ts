@@ -26,14 +26,22 @@ export const rectangle = (minX: number, minY: number, maxX: number, maxY: number
 	maxY
 ];
 
+/**
+ * m; a corner this near to a cutting line lies on it. Cutting it off would leave an edge of rounding length, whose
+ * direction means nothing and would cut away anything when clipped along. Chosen by us, far above rounding.
+ */
+const ON_LINE = 1e-9;
+
 /** The part with nx·x + ny·y ≤ c: the same array when nothing is cut off, an empty one when nothing is left. */
 export function clipHalfPlane(polygon: Flat, nx: number, ny: number, c: number): Flat {
 	const size = polygon.length;
+	const near = ON_LINE * (Math.abs(nx) + Math.abs(ny));
 	let cut = false;
 	let kept = false;
 	for (let i = 0; i < size; i += 2) {
-		if (nx * polygon[i]! + ny * polygon[i + 1]! > c) cut = true;
-		else kept = true;
+		const d = nx * polygon[i]! + ny * polygon[i + 1]! - c;
+		if (d > near) cut = true;
+		else if (d < -near) kept = true;
 	}
 	if (!cut) return polygon;
 	if (!kept) return NOTHING;
@@ -45,11 +53,11 @@ export function clipHalfPlane(polygon: Flat, nx: number, ny: number, c: number):
 		const bx = polygon[i]!;
 		const by = polygon[i + 1]!;
 		const db = nx * bx + ny * by - c;
-		if ((da < 0 && db > 0) || (da > 0 && db < 0)) {
+		if ((da < -near && db > near) || (da > near && db < -near)) {
 			const share = da / (da - db);
 			out.push(ax + (bx - ax) * share, ay + (by - ay) * share);
 		}
-		if (db <= 0) out.push(bx, by);
+		if (db <= near) out.push(bx, by);
 		ax = bx;
 		ay = by;
 		da = db;
@@ -57,22 +65,27 @@ export function clipHalfPlane(polygon: Flat, nx: number, ny: number, c: number):
 	return out.length < 6 ? NOTHING : out;
 }
 
-/** The part of any ring inside a convex polygon. */
+/** The part of any ring inside a convex polygon; none inside one that is too thin to have three edges. */
 export function clipToConvex(ring: Flat, convex: Flat): Flat {
 	let out = ring;
 	let ax = convex[convex.length - 2]!;
 	let ay = convex[convex.length - 1]!;
+	let edges = 0;
 	for (let i = 0; i < convex.length && out.length > 0; i += 2) {
 		const bx = convex[i]!;
 		const by = convex[i + 1]!;
 		const nx = by - ay;
 		const ny = ax - bx;
 		// Measured from the middle of the edge, so that both of its ends come out alike.
-		out = clipHalfPlane(out, nx, ny, (nx * (ax + bx) + ny * (ay + by)) / 2);
+		const c = (nx * (ax + bx) + ny * (ay + by)) / 2;
+		if (Math.abs(nx) + Math.abs(ny) > ON_LINE) {
+			out = clipHalfPlane(out, nx, ny, c);
+			edges += 1;
+		}
 		ax = bx;
 		ay = by;
 	}
-	return out;
+	return edges < 3 ? NOTHING : out;
 }
 
 /** Signed area, m²; positive counter-clockwise. */
@@ -167,8 +180,8 @@ function sidesBetween(rings: readonly Flat[], low: number, high: number): { low:
 		for (let i = 0; i < ring.length; i += 2) {
 			const j = (i + 2) % ring.length;
 			const [ax, ay, bx, by] = [ring[i]!, ring[i + 1]!, ring[j]!, ring[j + 1]!];
-			if (Math.min(ay, by) > low || Math.max(ay, by) < high || ay === by) continue;
-			const at = (y: number) => (y === ay ? ax : y === by ? bx : ax + ((bx - ax) * (y - ay)) / (by - ay));
+			if (Math.min(ay, by) > low + ON_LINE || Math.max(ay, by) < high - ON_LINE || ay === by) continue;
+			const at = (y: number) => ax + (bx - ax) * Math.min(1, Math.max(0, (y - ay) / (by - ay)));
 			sides.push({ low: at(low), high: at(high) });
 		}
 	}

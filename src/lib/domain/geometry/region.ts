@@ -40,11 +40,13 @@ export function createRegion(area: Area): Region {
 	const root = build(rings, bounds, 0);
 	const frame = rectangle(bounds.minX, bounds.minY, bounds.maxX, bounds.maxY);
 	const total = rings.reduce((sum, ring) => sum + flatArea(ring), 0);
+	/** Nodes take it that what they are asked about lies within their own bounds. */
+	const inFrame = (convex: Flat) => (isWithin(convex, bounds) ? convex : clipToConvex(convex, frame));
 	return {
 		bounds,
 		area: total,
 		areaWithin(convex, x, y, radius) {
-			return rings.length === 0 ? 0 : measure(root, clipToConvex(convex, frame), x, y, radius);
+			return rings.length === 0 ? 0 : measure(root, inFrame(convex), x, y, radius);
 		},
 		contains(x, y) {
 			const { minX, minY, maxX, maxY } = bounds;
@@ -54,7 +56,7 @@ export function createRegion(area: Area): Region {
 		},
 		ringsWithin(convex) {
 			const found: Flat[] = [];
-			if (rings.length > 0) collect(root, clipToConvex(convex, frame), found);
+			if (rings.length > 0) collect(root, inFrame(convex), found);
 			return found;
 		}
 	};
@@ -157,6 +159,15 @@ function collect({ full, split, rings }: Node, convex: Flat, found: Flat[]): voi
 		const inside = clipToConvex(ring, convex);
 		if (inside.length > 0) found.push(inside);
 	}
+}
+
+function isWithin(polygon: Flat, { minX, minY, maxX, maxY }: Bounds): boolean {
+	for (let i = 0; i < polygon.length; i += 2) {
+		const x = polygon[i]!;
+		const y = polygon[i + 1]!;
+		if (x < minX || x > maxX || y < minY || y > maxY) return false;
+	}
+	return true;
 }
 
 function boundsOfRings(rings: readonly Flat[]): Bounds {

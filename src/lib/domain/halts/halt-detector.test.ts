@@ -153,6 +153,21 @@ describe('kinds', () => {
 		expect(run(30, packed(false)).events).toMatchObject([{ kind: 'stall' }]);
 	});
 
+	it('trap: room is taken just before onset, not when the halt was noticed and people have closed in', () => {
+		const later = (time: number) => ({
+			...driveUntil(20)(time),
+			roomAlone: time > 21 ? 0 : 1,
+			roomLimitedByPeople: true
+		});
+		expect(run(30, later).events).toMatchObject([{ kind: 'stall' }]);
+		const drained = (time: number) => ({
+			...driveUntil(20)(time),
+			roomAlone: time > 19 && time < 21 ? 0 : 1,
+			roomLimitedByPeople: true
+		});
+		expect(run(30, drained).events).toMatchObject([{ kind: 'freeze' }]);
+	});
+
 	it('trap: a person who walks up to a standing robot did not stop it', () => {
 		expect(run(30, withPerson(20.8, 40)).events).toMatchObject([{ kind: 'stall' }]);
 	});

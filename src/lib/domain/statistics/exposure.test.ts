@@ -4,7 +4,7 @@ import { Failure } from '../failure.ts';
 import { computeEventsNeeded, computeExactPower, computeHours } from './exposure.ts';
 
 describe('computeEventsNeeded', () => {
-	it('needs 49.0 events by the log form and 49.8 exactly to see a halving with 80 % (table of METHODS, own computation)', () => {
+	it('needs 49.0 events by the log form and 49.8 exactly to see a halving with 80 % (table of the reference pack, topic 7)', () => {
 		const { logFormula, exactCentral, exactMidP } = computeEventsNeeded({ rateRatio: 0.5 });
 		expect(logFormula).toBeCloseTo(49.0, 1);
 		expect(exactCentral).toBeCloseTo(49.8, 1);

@@ -63,6 +63,8 @@ export interface ClockState {
 	/** Oldest first, differences rising: an entry above a later one can never be the minimum again. Empty at the start. */
 	readonly minima: readonly Minimum[];
 	readonly streak: Streak | null;
+	/** s, first message since the oldest of the minima expired; null while it has not */
+	readonly expiring: number | null;
 }
 
 export type ClockVerdict = 'ok' | 'late' | 'future' | 'stepped';
@@ -77,10 +79,12 @@ export interface ClockReading {
 }
 
 const BUCKETS = 64;
+/** s of newer messages after which an expired minimum is let go */
+const SETTLED = 10;
 /** Disagreeing messages in a row after which a streak starts over. */
 const STRAYS = 3;
 
-export const startClock = (): ClockState => ({ minima: [], streak: null });
+export const startClock = (): ClockState => ({ minima: [], streak: null, expiring: null });
 
 /**
  * Clock of a robot after one more message.
@@ -99,22 +103,22 @@ export function stepClock(
 ): ClockReading {
 	const difference = receivedAt - robotTime;
 	if (!Number.isFinite(difference)) return readClock(state, 'late', receivedAt, receivedAt, rule);
-	const newest = state.minima.at(-1);
-	if (!newest) {
-		return readClock({ minima: [{ at: receivedAt, difference }], streak: null }, 'ok', robotTime, receivedAt, rule);
-	}
-	const minima = withoutExpired(state.minima, receivedAt - rule.window);
-	const excess = difference - minima[0]!.difference;
-	const drifted = rule.drift * Math.max(0, receivedAt - newest.at - rule.window);
+	const begin = (least: number): ClockState => ({ ...startClock(), minima: [{ at: receivedAt, difference: least }] });
+	if (state.minima.length === 0) return readClock(begin(difference), 'ok', robotTime, receivedAt, rule);
+
+	const { minima, expiring } = withoutExpired(state, receivedAt, rule);
+	const least = minima[0]!;
+	const excess = difference - least.difference;
+	const drifted = rule.drift * Math.max(0, receivedAt - least.at - rule.window);
 	const kind = excess > rule.lateAfter + drifted ? 'late' : excess < -rule.futureAfter - drifted ? 'future' : null;
 	if (kind === null) {
-		const next = { minima: withMinimum(minima, receivedAt, difference, rule), streak: null };
+		const next = { minima: withMinimum(minima, receivedAt, difference, rule), streak: null, expiring };
 		return readClock(next, 'ok', robotTime, receivedAt, rule);
 	}
 	const streak = continueStreak(state.streak, kind, difference, receivedAt, rule);
-	if (!isConvincing(streak, receivedAt, rule)) return readClock({ minima, streak }, kind, robotTime, receivedAt, rule);
-	const stepped = { minima: [{ at: receivedAt, difference: streak.least }], streak: null };
-	return readClock(stepped, 'stepped', robotTime, receivedAt, rule);
+	return isConvincing(streak, receivedAt, rule)
+		? readClock(begin(streak.least), 'stepped', robotTime, receivedAt, rule)
+		: readClock({ minima, streak, expiring }, kind, robotTime, receivedAt, rule);
 }
 
 function readClock(
@@ -128,15 +132,20 @@ function readClock(
 	return { state, verdict, offset, correctedTime: Math.min(robotTime - offset, receivedAt) };
 }
 
-/** The newest entry stays even when it is old: after a silence it is still the best guess. */
-function withoutExpired(minima: readonly Minimum[], before: number): readonly Minimum[] {
-	const fresh = minima.findIndex(({ at }) => at >= before);
-	if (fresh === 0) return minima;
-	return fresh < 0 ? minima.slice(-1) : minima.slice(fresh);
+/**
+ * What has expired goes, except the last of it until messages have come in for a while again: after a silence the first
+ * to arrive may be a stored batch, and then the old minimum is still the better guess.
+ */
+function withoutExpired({ minima, expiring }: ClockState, at: number, { window }: ClockRule) {
+	const fresh = minima.findIndex((entry) => entry.at >= at - window);
+	if (fresh === 0) return { minima, expiring: null };
+	const since = expiring ?? at;
+	if (fresh > 0 && at - since >= SETTLED) return { minima: minima.slice(fresh), expiring: null };
+	return { minima: minima.slice(fresh < 0 ? -1 : fresh - 1), expiring: since };
 }
 
 function withMinimum(minima: readonly Minimum[], at: number, difference: number, { window }: ClockRule): Minimum[] {
-	const lower = minima.filter((entry) => entry.difference < difference && entry.at >= at - window);
+	const lower = minima.filter((entry) => entry.difference < difference);
 	const last = lower.at(-1);
 	// Within a bucket the first, lower entry speaks for this one too, which bounds the list.
 	if (last && at - last.at < window / BUCKETS) return lower;

@@ -4,6 +4,7 @@ import { mostPairsPrice, solveSparse, type SparseCosts } from './assignment.ts';
 import { chiSquareGate } from './gating.ts';
 import {
 	coasting,
+	mapVariance,
 	positionVariance,
 	type PersonMeasurement,
 	type PersonTrack,
@@ -87,7 +88,7 @@ function alignmentVariance(track: PersonTrack, robot: string, time: number, rule
 		if (name === robot) own = true;
 		else others = true;
 	}
-	return (own ? (others ? 1 : 0) : 2) * rule.alignmentSd * rule.alignmentSd;
+	return (own ? (others ? 1 : 0) : 2) * mapVariance(track, rule);
 }
 
 /** The tracks any of the persons could belong to. */
@@ -108,7 +109,6 @@ function expectNear(
 		noise = Math.max(noise, sd * sd);
 	}
 	const expected: Expected[] = [];
-	const worstAlignment = 2 * rule.alignmentSd * rule.alignmentSd;
 	tracks.forEach((track, index) => {
 		const elapsed = time - track.updatedAt;
 		const { reach } = coasting(elapsed);
@@ -116,7 +116,8 @@ function expectNear(
 		const y = track.y + reach * track.vy;
 		const position = positionVariance(track.covariance, elapsed, rule.q);
 		const radius =
-			Math.sqrt(FAR * (position + worstAlignment + noise)) + rule.maxSpeed * Math.min(Math.abs(elapsed), FOLLOW_FOR);
+			Math.sqrt(FAR * (position + 2 * mapVariance(track, rule) + noise)) +
+			rule.maxSpeed * Math.min(Math.abs(elapsed), FOLLOW_FOR);
 		if (x < minX - radius || x > maxX + radius || y < minY - radius || y > maxY + radius) return;
 		const sighting = track.seenBy.get(robot);
 		const alignment = alignmentVariance(track, robot, time, rule);

@@ -2,7 +2,7 @@
 
 import { fuseCorrelated } from './fusion.ts';
 import { chiSquareGate } from './gating.ts';
-import { coastTrack, predictTrack, type PersonTrack, type TrackerRule } from './person-track.ts';
+import { coastTrack, mapVariance, predictTrack, type PersonTrack, type TrackerRule } from './person-track.ts';
 
 /** One scan as the tracker remembers it: which tracks the robot saw in it. */
 export interface RecentScan {
@@ -60,7 +60,7 @@ export function mergeTracks(
 		const merged = mergePair(track, twin, rule);
 		list[index] = merged;
 		list[near] = null;
-		recent = renameInScans(recent, merged.id === track.id ? twin : track, merged.id);
+		recent = renameInScans(recent, Math.max(track.id, twin.id), merged.id);
 	}
 	return { tracks: list.filter((track) => track !== null), scans: recent };
 }
@@ -105,7 +105,7 @@ function nearestTwin(
 		const there = predictTrack(other, track.updatedAt, rule);
 		const distance = Math.hypot(there.x - track.x, there.y - track.y);
 		if (distance >= nearestAt) continue;
-		const variance = track.covariance[0]! + there.variance + 2 * rule.alignmentSd * rule.alignmentSd;
+		const variance = track.covariance[0]! + there.variance + 2 * mapVariance(track, rule);
 		if (distance * distance > gate * variance) continue;
 		const slip = Math.hypot(there.vx - track.vx, there.vy - track.vy);
 		const slack = track.covariance[10]! + other.covariance[10]! + VELOCITY_SLACK * VELOCITY_SLACK;
@@ -118,9 +118,7 @@ function nearestTwin(
 
 /** Did any robot report both in one scan since then? */
 function seenApart(a: PersonTrack, b: PersonTrack, scans: RecentScans, since: number): boolean {
-	for (const robot of a.seenBy.keys()) {
-		if (!b.seenBy.has(robot)) continue;
-		const own = scans.get(robot) ?? [];
+	for (const own of scans.values()) {
 		for (let k = own.length - 1; k >= 0 && own[k]!.time >= since; k -= 1) {
 			if (own[k]!.tracks.has(a.id) && own[k]!.tracks.has(b.id)) return true;
 		}
@@ -169,22 +167,17 @@ function mergePair(a: PersonTrack, b: PersonTrack, rule: TrackerRule): PersonTra
 		confirmed: a.confirmed || b.confirmed,
 		seenBy,
 		misses: Math.min(a.misses, b.misses),
-		interval: Math.min(a.interval, b.interval),
 		closeTo: null
 	};
 }
 
 /** Who was seen apart from the track that goes was seen apart from the one that stays. */
-function renameInScans(scans: RecentScans, gone: PersonTrack, stays: number): RecentScans {
-	const renamed = new Map(scans);
-	for (const robot of gone.seenBy.keys()) {
-		const own = (scans.get(robot) ?? []).map((scan) => {
-			if (!scan.tracks.has(gone.id)) return scan;
-			const tracks = new Set(scan.tracks).add(stays);
-			tracks.delete(gone.id);
-			return { ...scan, tracks };
-		});
-		renamed.set(robot, own);
-	}
-	return renamed;
+function renameInScans(scans: RecentScans, gone: number, stays: number): RecentScans {
+	const rename = (scan: RecentScan): RecentScan => {
+		if (!scan.tracks.has(gone)) return scan;
+		const tracks = new Set(scan.tracks).add(stays);
+		tracks.delete(gone);
+		return { ...scan, tracks };
+	};
+	return new Map([...scans].map(([robot, own]) => [robot, own.map(rename)]));
 }

@@ -40,10 +40,8 @@ export interface PersonTrack extends KalmanState {
 	readonly confirmed: boolean;
 	/** By robot; robots that have not reported the person for `forgetAfter` are left out. */
 	readonly seenBy: ReadonlyMap<string, Sighting>;
-	/** Scans in a row that looked at the place and reported nobody */
+	/** Scans since the last measurement that looked at the place and reported nobody */
 	readonly misses: number;
-	/** s between the last two measurements */
-	readonly interval: number;
 	/** Another track that has been in the same place since then, if any */
 	readonly closeTo: { readonly id: number; readonly since: number } | null;
 }
@@ -58,6 +56,8 @@ export interface TrackerRule {
 	readonly sdFloor: number;
 	/** m, deviation of each robot's map from the floor plan */
 	readonly alignmentSd: number;
+	/** s, deviation of each robot's corrected clock; moves people by their speed */
+	readonly clockSd: number;
 	/** m/s, deviation of the velocity of somebody new: unknown, and as stated by a robot */
 	readonly newVelocitySd: number;
 	readonly statedVelocitySd: number;
@@ -92,6 +92,7 @@ export const DEFAULT_TRACKER_RULE: TrackerRule = {
 	gateProbability: 0.99,
 	sdFloor: 0.0005,
 	alignmentSd: 0.05,
+	clockSd: 0.03,
 	newVelocitySd: 1,
 	statedVelocitySd: 0.5,
 	maxSpeed: 2.5,
@@ -163,6 +164,10 @@ export function predictTrack(
 		variance: positionVariance(track.covariance, dt, rule.q)
 	};
 }
+
+/** m² per axis by which one robot's map and clock may put this person in another place than they are. */
+export const mapVariance = ({ vx, vy }: PersonTrack, { alignmentSd, clockSd }: TrackerRule): number =>
+	alignmentSd * alignmentSd + (vx * vx + vy * vy) * clockSd * clockSd;
 
 /** m², the same for x and y: measurements are round, so nothing in the tracker ever prefers a direction. */
 export function positionVariance(p: Float64Array, dt: number, q: number): number {

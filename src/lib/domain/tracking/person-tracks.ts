@@ -11,6 +11,7 @@ import { mergeTracks, type RecentScan, type RecentScans } from './person-merging
 import {
 	coastTrack,
 	DEFAULT_TRACKER_RULE,
+	mapVariance,
 	predictTrack,
 	type PersonMeasurement,
 	type PersonTrack,
@@ -50,6 +51,8 @@ export interface TrackerState {
 
 /** m; the same name twice in one scan this close together is one person listed twice. */
 const SAME_PLACE = 0.05;
+/** Scans that see nobody after which a track that was never confirmed was a glitch. */
+const GLITCH_MISSES = 2;
 
 export const startTracker = (): TrackerState => ({ tracks: [], nextId: 1, scans: new Map(), dropped: [] });
 
@@ -95,7 +98,7 @@ export function stepTracker(
 		nextId += 1;
 	});
 	for (let index = 0; index < state.tracks.length; index += 1) {
-		if (!touched.has(index)) tracks[index] = withMiss(tracks[index]!, scan, rule);
+		if (!touched.has(index)) tracks[index] = withMiss(tracks[index]!, scan, state.scans, rule);
 	}
 
 	const remaining: PersonTrack[] = [];
@@ -180,7 +183,6 @@ function newTrack(
 		confirmed: hits >= rule.confirmHits,
 		seenBy: new Map([[robot, { localId: person.localId, at: time, x: person.x, y: person.y }]]),
 		misses: 0,
-		interval: 0,
 		closeTo: null
 	};
 }
@@ -194,7 +196,6 @@ function withMeasurement(
 ): PersonTrack {
 	const inTime = time - track.seenAt <= rule.confirmWithin;
 	const hits = inTime ? track.hits + 1 : 1;
-	const gap = time - track.seenAt;
 	const { x, y, vx, vy, covariance } = follow(track, person, robot, time, rule);
 	const newest = time >= track.updatedAt;
 	// Written out, not spread: this runs for every person of every scan.
@@ -213,7 +214,6 @@ function withMeasurement(
 		confirmed: track.confirmed || hits >= rule.confirmHits,
 		seenBy: withSighting(track.seenBy, robot, person, time, rule),
 		misses: 0,
-		interval: gap > rule.instant ? gap : track.interval,
 		closeTo: track.closeTo
 	};
 }
@@ -265,9 +265,10 @@ function mapNoise(
 	{ sd }: PersonMeasurement,
 	robot: string,
 	time: number,
-	{ alignmentSd, instant, forgetAfter }: TrackerRule
+	rule: TrackerRule
 ): number {
-	if (track.updatedBy !== robot && Math.abs(time - track.updatedAt) < instant) return alignmentSd * alignmentSd;
+	const { alignmentSd, instant, forgetAfter } = rule;
+	if (track.updatedBy !== robot && Math.abs(time - track.updatedAt) < instant) return mapVariance(track, rule);
 	for (const [name, { at }] of track.seenBy) {
 		if (name !== robot && time - at <= forgetAfter) return Math.min(alignmentSd, sd) ** 2;
 	}
@@ -284,19 +285,33 @@ function withoutSighting(track: PersonTrack, { localId }: PersonMeasurement, rob
 	return { ...track, seenBy };
 }
 
-/** The track after a scan that did not report it; null when it is gone. */
-function withMiss(track: PersonTrack, { time, sees }: PersonScan, rule: TrackerRule): PersonTrack | null {
+/** The track after a scan that did not report it; null when the person is gone. */
+function withMiss(
+	track: PersonTrack,
+	{ robot, time, sees }: PersonScan,
+	scans: RecentScans,
+	rule: TrackerRule
+): PersonTrack | null {
 	const unseenFor = time - track.seenAt;
 	if (unseenFor <= 0) return track;
 	if (unseenFor > (track.confirmed ? rule.missTimeout : rule.confirmWithin)) return null;
 	const { x, y } = predictTrack(track, time, rule);
-	if (!sees(x, y)) return track;
+	if (!sees(x, y) || !mayMiss(track, robot, scans)) return track;
 	const misses = track.misses + 1;
-	if (!track.confirmed) return misses >= 2 ? null : { ...track, misses };
-	// Robots that are slower than the one that missed the person get their turn first.
-	const due = unseenFor > 1.5 * Math.min(track.interval, rule.missedFor);
-	const gone = misses >= rule.missesToDelete || unseenFor >= rule.missedFor;
-	return gone && due ? null : { ...track, misses };
+	const gone = track.confirmed ? misses >= rule.missesToDelete || unseenFor >= rule.missedFor : misses >= GLITCH_MISSES;
+	return gone ? null : { ...track, misses };
+}
+
+/**
+ * Somebody may stand between this robot and the person. So it only counts as a miss when the robot has seen the person
+ * before, or when every robot that has seen them has looked again in vain.
+ */
+function mayMiss(track: PersonTrack, robot: string, scans: RecentScans): boolean {
+	if (track.seenBy.has(robot)) return true;
+	for (const [name, { at }] of track.seenBy) {
+		if (!((scans.get(name)?.at(-1)?.time ?? Infinity) > at)) return false;
+	}
+	return true;
 }
 
 function withScan(scans: RecentScans, robot: string, scan: RecentScan, rule: TrackerRule): RecentScans {

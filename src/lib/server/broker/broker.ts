@@ -50,6 +50,9 @@ export async function startBroker(options: BrokerOptions): Promise<Broker> {
 	const refusals = createRefusals(options.log);
 	const gatekeeper = createGatekeeper(options, refusals);
 	const aedes = await Aedes.createBroker({
+		// Messages on their way at once. With few, each waits for others' turns of the event loop; what bounds memory is that
+		// no robot is read from while its last messages are on their way.
+		concurrency: 5000,
 		connectTimeout: 10_000,
 		drainTimeout: 10_000,
 		preConnect(_client, packet, done) {

@@ -37,7 +37,7 @@ export interface OpenOptions {
  *
  * @throws Failure 'storage' when the file cannot be opened or SQLite is too old
  */
-export function openDatabase(path: string, { readonly = false, timeoutMs = 25 }: OpenOptions = {}): OpenDatabase {
+export function openDatabase(path: string, { readonly = false, timeoutMs = 10 }: OpenOptions = {}): OpenDatabase {
 	try {
 		if (path !== ':memory:' && !readonly) mkdirSync(dirname(path), { recursive: true });
 		const raw = new Sqlite(path, { readonly, timeout: timeoutMs });

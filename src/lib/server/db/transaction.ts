@@ -5,8 +5,11 @@ import { setTimeout as wait } from 'node:timers/promises';
 import type { Database } from './schema.ts';
 import { isBusy, storageFailure } from './failures.ts';
 
-/** ms to wait before each further attempt, about 2.5 s in all; chosen by us: longer than any transaction of ours, shorter than a reader's patience. */
-const BACK_OFF_MS = [5, 10, 20, 40, 80, 160, 320, 640, 1280];
+/**
+ * ms to wait before each further attempt, at most about 2.5 s in all. Chosen by us: longer than any transaction of ours,
+ * shorter than a reader's patience; the pauses stop growing early, because whoever waits longest must not lose.
+ */
+const BACK_OFF_MS = [5, 10, 20, 40, ...new Array<number>(30).fill(80)];
 
 /**
  * Runs `work` in one IMMEDIATE transaction and returns its result. When another connection holds the write lock, tries

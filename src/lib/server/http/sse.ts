@@ -40,6 +40,8 @@ export function liveResponse(parts: LiveStreamParts): Response {
 					if (!open) return;
 					if ((controller.desiredSize ?? 0) > 0) return controller.enqueue(bytes);
 					onSlowReader?.();
+					// An error, not an end: what is still queued is dropped, and the browser connects again.
+					controller.error(new Error('The reader is too slow.'));
 					end();
 				};
 				const recheck = async () => {
@@ -59,7 +61,7 @@ export function liveResponse(parts: LiveStreamParts): Response {
 					try {
 						controller.close();
 					} catch {
-						// Cancelled by the reader, so closed already.
+						// Cancelled by the reader or cut off, so closed already.
 					}
 				};
 

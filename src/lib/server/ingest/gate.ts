@@ -2,10 +2,19 @@
 
 import { isUtf8 } from 'node:buffer';
 import type { z } from 'zod';
-import { CHANNELS, isChannel, MAX_PAYLOAD_BYTES, parseTopic, type Answer, type Channel } from '../../contracts/mqtt.ts';
+import {
+	CHANNELS,
+	isChannel,
+	MAX_PAYLOAD_BYTES,
+	parseTopic,
+	type Answer,
+	type Channel,
+	type RobotTopic
+} from '../../contracts/mqtt.ts';
 import type { RobotObservation, RejectionReason } from '../../domain/engine/observation.ts';
-import { observationOf, wellFormedAnswer, type Message } from './observe.ts';
+import { observationOf, wellFormedAnswer, type AnswerMessage, type Message } from './observe.ts';
 import { stepSequence, type SequenceState, type SequenceVerdict } from './sequence.ts';
+import { compileShape } from './shape.ts';
 
 /** Whether a robot is in service at a venue. Asked for every message, so it must be cheap. */
 export type RobotLookup = (venue: string, robot: string) => boolean;
@@ -52,13 +61,19 @@ export interface Gate {
 const MAX_DETAIL = 300;
 const MAX_ISSUES = 3;
 
+const FITS = Object.fromEntries(
+	Object.entries(CHANNELS).map(([channel, { schema }]) => [channel, compileShape(schema)])
+) as Record<Channel, (value: unknown) => boolean>;
+
 /** A gate that has seen nothing yet. It remembers the last sequence number per robot and channel. */
 export function createGate({ robots }: { readonly robots: RobotLookup }): Gate {
 	const sequences = new Map<string, SequenceState>();
+	/** Topics of robots in service, taken apart */
+	const topics = new Map<string, RobotTopic>();
 
 	return {
 		accept(topic, payload, retained, receivedAtMs) {
-			const to = parseTopic(topic);
+			const to = topics.get(topic) ?? parseTopic(topic);
 			const robot = to !== null && robots(to.venue, to.robot) ? to.robot : null;
 			if (payload.length > MAX_PAYLOAD_BYTES) {
 				return refuse('too_large', robot, `${payload.length} bytes; at most ${MAX_PAYLOAD_BYTES} are read`);
@@ -70,21 +85,25 @@ export function createGate({ robots }: { readonly robots: RobotLookup }): Gate {
 				return refuse('unknown_robot', null, `no robot ${to.robot} is in service at ${to.venue}`);
 			}
 
+			topics.set(topic, to);
+
 			const json = parseJson(payload);
 			if (!json.ok) return refuse('invalid_json', robot, json.detail);
-			const parsed = CHANNELS[to.channel].schema.safeParse(json.value);
-			if (!parsed.success) return refuse('schema', robot, inWords(parsed.error));
+			const read = readMessage(to.channel, json.value);
+			if (!read.ok) return refuse('schema', robot, read.detail);
 
-			const said = { robot, receivedAt: receivedAtMs / 1000, retained };
-			if (to.channel === 'answer') {
+			const receipt = { robot, receivedAt: receivedAtMs / 1000, retained };
+			if (read.channel === 'answer') {
 				if (retained) return refuse('past', robot, 'an answer kept by the broker belongs to a command of long ago');
-				const answer = wellFormedAnswer(parsed.data as Answer);
-				return { ok: true, kind: 'answer', venue: to.venue, robot, answer, receivedAt: said.receivedAt };
+				const answer = wellFormedAnswer(read.message);
+				return { ok: true, kind: 'answer', venue: to.venue, robot, answer, receivedAt: receipt.receivedAt };
 			}
-			const observation = observationOf({ channel: to.channel, message: parsed.data } as Message, said);
-			const { seq, t } = parsed.data as { seq?: number; t: number };
-			if (seq === undefined) return { ok: true, kind: 'observation', venue: to.venue, observation, sequence: null };
+			const observation = observationOf(read, receipt);
+			if (read.channel === 'connection') {
+				return { ok: true, kind: 'observation', venue: to.venue, observation, sequence: null };
+			}
 
+			const { seq, t } = read.message;
 			const key = `${to.venue}/${robot}/${to.channel}`;
 			const last = sequences.get(key) ?? null;
 			// After every reconnect the broker hands out the kept state again: nothing new, and nothing wrong.
@@ -97,6 +116,16 @@ export function createGate({ robots }: { readonly robots: RobotLookup }): Gate {
 			return { ok: true, kind: 'observation', venue: to.venue, observation, sequence: { seq, verdict } };
 		}
 	};
+}
+
+type Read = ({ readonly ok: true } & (Message | AnswerMessage)) | { readonly ok: false; readonly detail: string };
+
+function readMessage(channel: Channel, value: unknown): Read {
+	if (FITS[channel](value)) return { ok: true, channel, message: value } as Read;
+	const parsed = CHANNELS[channel].schema.safeParse(value);
+	return parsed.success
+		? ({ ok: true, channel, message: parsed.data } as Read)
+		: { ok: false, detail: inWords(parsed.error) };
 }
 
 type Json = { readonly ok: true; readonly value: unknown } | { readonly ok: false; readonly detail: string };

@@ -1,14 +1,21 @@
 /** Turns a checked message of the native contract into the domain's words: seconds, camel case, null for what is not there. */
 
+import type { z } from 'zod';
 import type { Answer, Connection, People, Pose, State } from '../../contracts/mqtt.ts';
 import type { RobotObservation } from '../../domain/engine/observation.ts';
 import { secondsFromMs } from '../../domain/units.ts';
 
 export type Message =
 	| { readonly channel: 'pose'; readonly message: Pose }
-	| { readonly channel: 'people'; readonly message: People }
+	| { readonly channel: 'people'; readonly message: z.input<typeof People> }
 	| { readonly channel: 'state'; readonly message: State }
 	| { readonly channel: 'connection'; readonly message: Connection };
+
+/** Answers are not observations: they concern a command, not the floor. */
+export interface AnswerMessage {
+	readonly channel: 'answer';
+	readonly message: Answer;
+}
 
 export interface Receipt {
 	readonly robot: string;
@@ -38,7 +45,7 @@ export function observationOf(said: Message, receipt: Receipt): RobotObservation
 				fieldOfView: fov ?? null,
 				blocked: blocked ?? null,
 				persons: persons.map(({ id, x, y, vx, vy, sd }) => ({
-					id: id.toWellFormed(),
+					id: String(id).toWellFormed(),
 					x,
 					y,
 					vx: vx ?? null,
@@ -60,7 +67,7 @@ function stateOf({ tasked, task, mode, paused, estop, charging, battery, localiz
 		task: task
 			? {
 					id: task.id.toWellFormed(),
-					goal: task.goal,
+					goal: { x: task.goal.x, y: task.goal.y },
 					route: task.route?.map(([x, y]) => ({ x, y })) ?? null
 				}
 			: null,

@@ -1,6 +1,6 @@
 /** Incidents as lists and one by one. */
 
-import type { Kysely } from 'kysely';
+import { sql, type Kysely } from 'kysely';
 import type { Incident, IncidentDetail } from '../../contracts/api.ts';
 import type { HaltKind, Verdict } from '../../contracts/live.ts';
 import type { Database } from '../db/schema.ts';
@@ -34,11 +34,9 @@ export async function readIncidents(db: Kysely<Database>, filter: IncidentFilter
 	if (toMs !== undefined) query = query.where('incident.onset_ms', '<', toMs);
 	if (near !== undefined) {
 		const { x, y, radius } = near;
-		query = query.where(({ eb }) => {
-			const square = (column: 'incident.x_m' | 'incident.y_m', at: number) =>
-				eb(eb(column, '-', at), '*', eb(column, '-', at));
-			return eb(eb(square('incident.x_m', x), '+', square('incident.y_m', y)), '<=', radius * radius);
-		});
+		const dx = sql`(incident.x_m - ${x})`;
+		const dy = sql`(incident.y_m - ${y})`;
+		query = query.where(sql<boolean>`${dx} * ${dx} + ${dy} * ${dy} <= ${radius * radius}`);
 	}
 	if (after !== undefined) {
 		query = query.where(({ eb, refTuple, tuple }) =>
