@@ -19,7 +19,10 @@ export interface Provision {
 }
 
 /** Adds the venue, its floors with zones and maps, and its robots with their models, each only when it is not there yet. */
-export async function provisionVenue(db: Kysely<Database>, plan: Provision): Promise<{ venueId: number; added: number }> {
+export async function provisionVenue(
+	db: Kysely<Database>,
+	plan: Provision
+): Promise<{ venueId: number; added: number }> {
 	const { venue, floors, robots, nowMs } = plan;
 	return writeTransaction(db, async (trx) => {
 		let added = 0;
@@ -30,10 +33,18 @@ export async function provisionVenue(db: Kysely<Database>, plan: Provision): Pro
 			added++;
 		}
 		for (const { key, mark, model } of robots) {
-			const known = await trx.selectFrom('robot').select('id').where('venue_id', '=', venueId).where('key', '=', key).executeTakeFirst();
+			const known = await trx
+				.selectFrom('robot')
+				.select('id')
+				.where('venue_id', '=', venueId)
+				.where('key', '=', key)
+				.executeTakeFirst();
 			if (known) continue;
 			const modelId = await ensureModel(trx, model);
-			await trx.insertInto('robot').values({ venue_id: venueId, key, mark, model_id: modelId, retired_at_ms: null }).execute();
+			await trx
+				.insertInto('robot')
+				.values({ venue_id: venueId, key, mark, model_id: modelId, retired_at_ms: null })
+				.execute();
 			added++;
 		}
 		return { venueId, added };
@@ -79,7 +90,12 @@ export async function ensureCredentials(
 				.where('venue_id', '=', venueId)
 				.where('key', '=', key)
 				.executeTakeFirstOrThrow();
-			const valid = await trx.selectFrom('robot_credential').selectAll().where('robot_id', '=', id).where('revoked_at_ms', 'is', null).execute();
+			const valid = await trx
+				.selectFrom('robot_credential')
+				.selectAll()
+				.where('robot_id', '=', id)
+				.where('revoked_at_ms', 'is', null)
+				.execute();
 			const password = known[key];
 			if (password !== undefined && valid.some(({ password_hash }) => checkRobotSecret(password, password_hash))) {
 				passwords[key] = password;

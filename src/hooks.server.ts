@@ -68,6 +68,7 @@ export const handle: Handle = async ({ event, resolve }) => {
 
 async function answer(app: App, event: RequestEvent, resolve: Parameters<Handle>[0]['resolve']): Promise<Response> {
 	const { locals, url } = event;
+	const isApi = areaOf({ routeId: event.route.id, pathname: url.pathname }) === 'api';
 	locals.user = null;
 	locals.credential = null;
 	try {
@@ -75,11 +76,11 @@ async function answer(app: App, event: RequestEvent, resolve: Parameters<Handle>
 		locals.user = identity?.user ?? null;
 		locals.credential = identity?.credential ?? null;
 	} catch (cause) {
-		if (!(cause instanceof Failure)) throw cause;
+		// Kit makes an error page of what is thrown.
+		if (!isApi || !(cause instanceof Failure)) throw cause;
 		return problemFrom(cause, locals.requestId);
 	}
 
-	const isApi = areaOf({ routeId: event.route.id, pathname: url.pathname }) === 'api';
 	switch (judgeVisit(visitFrom(event))) {
 		case 'foreign origin':
 			return problem(
@@ -94,10 +95,17 @@ async function answer(app: App, event: RequestEvent, resolve: Parameters<Handle>
 		case 'sign in':
 			if (isApi)
 				return problemFrom(new Failure('unauthenticated', 'Sign in, or send a valid token.'), locals.requestId);
-			return redirect(303, `/sign-in?next=${encodeURIComponent(url.pathname + url.search)}`);
+			return toSignIn(event);
 		case 'come in':
 			return resolve(event);
 	}
+}
+
+/** Kit turns a redirect that is thrown into the form its own scripts expect; a plain visit gets a plain answer. */
+function toSignIn({ url, request, isDataRequest }: RequestEvent): Response {
+	const location = `/sign-in?next=${encodeURIComponent(url.pathname + url.search)}`;
+	if (isDataRequest || request.method !== 'GET') redirect(303, location);
+	return new Response(null, { status: 303, headers: { location } });
 }
 
 function visitFrom({ request, route, url, locals }: RequestEvent): Visit {

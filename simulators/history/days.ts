@@ -72,7 +72,8 @@ function shapeAt(zone: string, minute: number): number {
 	if (zone === 'food-court') return 0.15 + 0.85 * bump(165, 45) + 0.2 * bump(300, 40);
 	if (zone === 'cloakroom' || zone === 'entrance') return 0.1 + 0.9 * bump(20, 30) + 0.8 * bump(465, 25);
 	if (zone === 'hall-b-stage') return 0.15 + 0.6 * bump(75, 40) + 0.85 * bump(400, 55);
-	if (zone.startsWith('bridge') || zone.includes('lift')) return 0.2 + 0.7 * bump(120, 20) + 0.6 * bump(210, 20) + 0.8 * bump(455, 20);
+	if (zone.startsWith('bridge') || zone.includes('lift'))
+		return 0.2 + 0.7 * bump(120, 20) + 0.6 * bump(210, 20) + 0.8 * bump(455, 20);
 	return base + 0.25 * bump(100, 50);
 }
 

@@ -44,7 +44,8 @@ export function roomFor(
 	random: Random
 ): { verdict: Verdict; roomAlone: number | null; roomShared: number | null; observedShare: number } {
 	const observedShare = Math.min(1, Math.max(0.1, random.normal(0.72, 0.18)));
-	if (kind === 'silent' || observedShare < 0.35) return { verdict: 'unseen', roomAlone: null, roomShared: null, observedShare };
+	if (kind === 'silent' || observedShare < 0.35)
+		return { verdict: 'unseen', roomAlone: null, roomShared: null, observedShare };
 	if (kind !== 'freeze' && kind !== 'dither') {
 		const room = random.between(0.4, 1.1);
 		return { verdict: 'open', roomAlone: room, roomShared: room, observedShare };
@@ -52,6 +53,11 @@ export function roomFor(
 	const weights = [0.35, 1.3, 0.3 + 0.9 * density];
 	const verdict = (['open', 'shared', 'packed'] as const)[random.weighted(weights)]!;
 	const roomAlone = verdict === 'open' ? random.between(0.26, 0.9) : random.between(0, 0.2);
-	const roomShared = verdict === 'shared' ? random.between(0.27, 0.75) : verdict === 'open' ? roomAlone + random.between(0, 0.2) : random.between(roomAlone, 0.24);
+	const roomShared =
+		verdict === 'shared'
+			? random.between(0.27, 0.75)
+			: verdict === 'open'
+				? roomAlone + random.between(0, 0.2)
+				: random.between(roomAlone, 0.24);
 	return { verdict, roomAlone, roomShared, observedShare };
 }

@@ -9,7 +9,7 @@ import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest';
 import { openDatabase } from '../../src/lib/server/db/connection.ts';
 import { migrateToLatest } from '../../src/lib/server/db/migrate.ts';
 import { endClients, signInRobot, signInService, topicOf, type TestBroker } from '../support/brokers.ts';
-import { OWN_BROKER, startBrokerThread } from '../support/brokers-own.ts';
+import { OWN_BROKER, startBrokerThread, startOwnBroker } from '../support/brokers-own.ts';
 
 describe('the own broker', () => {
 	let broker: TestBroker;
@@ -53,6 +53,18 @@ describe('the own broker', () => {
 		await expect(robot.mqtt.subscribeAsync('#')).rejects.toThrow();
 		expect(robot.mqtt.connected).toBe(true);
 	});
+});
+
+it('lets 200 robots in that all come at once', async () => {
+	const robots = Array.from({ length: 200 }, (_, i) => `sweeper-${i}`);
+	const broker = await startOwnBroker(robots);
+	try {
+		const clients = await Promise.all(robots.map((robot) => signInRobot(broker, robot)));
+		expect(clients.every(({ mqtt }) => mqtt.connected)).toBe(true);
+	} finally {
+		await endClients();
+		await broker.stop();
+	}
 });
 
 describe('the broker thread', () => {

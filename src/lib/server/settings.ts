@@ -14,7 +14,7 @@ const Environment = z.object({
 		.optional(),
 	MQTT_USERNAME: z.string().optional(),
 	MQTT_PASSWORD: z.string().optional(),
-	MQTT_PORT: z.coerce.number().int().min(0).max(65_535).default(1883),
+	MQTT_PORT: z.coerce.number('must be a number').int().min(0).max(65_535).default(1883),
 	/** Only this machine unless told otherwise: 0.0.0.0 lets robots in. */
 	MQTT_HOST: z.string().default('127.0.0.1'),
 	ENGINE_VENUES: z
@@ -28,7 +28,7 @@ const Environment = z.object({
 		),
 	LOG_LEVEL: z.enum(LOG_LEVELS).default('info'),
 	MOSQUITTO_DIR: z.string().optional(),
-	SESSION_DAYS: z.coerce.number().positive().max(90).default(7),
+	SESSION_DAYS: z.coerce.number('must be a number').positive().max(90).default(7),
 	METRICS_TOKEN: z.string().min(16, 'must have at least 16 characters').optional()
 });
 

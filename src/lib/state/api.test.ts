@@ -3,7 +3,9 @@ import { listIncidents, queryOf, readIncident } from './api.ts';
 
 describe('queryOf', () => {
 	it('leaves out what is not set, and keeps zero', () => {
-		expect(queryOf({ floor: 'a b', kind: '', cursor: null, state: undefined, near_x_m: 0 })).toBe('?floor=a+b&near_x_m=0');
+		expect(queryOf({ floor: 'a b', kind: '', cursor: null, state: undefined, near_x_m: 0 })).toBe(
+			'?floor=a+b&near_x_m=0'
+		);
 	});
 
 	it('is nothing without parameters', () => {
@@ -14,7 +16,10 @@ describe('queryOf', () => {
 describe('an answer', () => {
 	it('that is no success speaks the server’s own words', async () => {
 		const refuse = vi.fn(async () => Response.json({ detail: 'No such incident.' }, { status: 404 }));
-		await expect(readIncident('a/b', refuse as typeof fetch)).rejects.toMatchObject({ status: 404, message: 'No such incident.' });
+		await expect(readIncident('a/b', refuse as typeof fetch)).rejects.toMatchObject({
+			status: 404,
+			message: 'No such incident.'
+		});
 		expect(refuse).toHaveBeenCalledWith('/api/v1/incidents/a%2Fb', undefined);
 	});
 

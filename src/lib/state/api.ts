@@ -1,7 +1,7 @@
 /** Requests to the desk's own API from the browser. An answer that is not a success becomes an error with the server's words. */
 
-import type { AlarmPage, Incident, IncidentPage, RejectedMessages } from '../contracts/api.ts';
-import type { LiveAlarm } from '../contracts/live.ts';
+import type { AlarmPage, IncidentDetail, IncidentPage, RejectedMessages, RobotList } from '../contracts/api.ts';
+import type { LiveAlarm, LiveHealth } from '../contracts/live.ts';
 
 type Fetch = typeof fetch;
 type Query = Readonly<Record<string, string | number | null | undefined>>;
@@ -20,9 +20,12 @@ export class AnswerError extends Error {
 
 export const listIncidents = (query: Query, using: Fetch = fetch) => get<IncidentPage>('/incidents', query, using);
 export const listAlarms = (query: Query, using: Fetch = fetch) => get<AlarmPage>('/alarms', query, using);
-export const listRejected = (query: Query, using: Fetch = fetch) => get<RejectedMessages>('/rejected-messages', query, using);
+export const listRejected = (query: Query, using: Fetch = fetch) =>
+	get<RejectedMessages>('/rejected-messages', query, using);
+export const listRobots = (using: Fetch = fetch) => get<RobotList>('/robots', {}, using);
+export const readHealth = (using: Fetch = fetch) => get<LiveHealth>('/health', {}, using);
 export const readIncident = (id: string, using: Fetch = fetch) =>
-	get<Incident>(`/incidents/${encodeURIComponent(id)}`, {}, using);
+	get<IncidentDetail>(`/incidents/${encodeURIComponent(id)}`, {}, using);
 
 /** Acknowledges an alarm; a second time changes nothing and answers with the first. */
 export function acknowledgeAlarm(id: number): Promise<LiveAlarm> {

@@ -33,7 +33,13 @@ const latest = () => FakeSource.all.at(-1) as FakeSource;
 const health = () => ({ server_time_ms: Date.now(), troubles: [] });
 const frame = () => ({ floor: 'f', server_time_ms: Date.now(), robots: [], zones: [], halts: [], persons: [] });
 const snapshot = () => ({ frame: frame(), field: null, alarms: [], health: health() });
-const delta = (server_time_ms = Date.now()) => ({ server_time_ms, robots: [], robots_gone: [], persons: [], zones: [] });
+const delta = (server_time_ms = Date.now()) => ({
+	server_time_ms,
+	robots: [],
+	robots_gone: [],
+	persons: [],
+	zones: []
+});
 
 let floor: LiveFloor;
 let close: () => void;
@@ -43,7 +49,10 @@ beforeEach(() => {
 	vi.stubGlobal('EventSource', FakeSource);
 	vi.stubGlobal('document', page);
 	vi.stubGlobal('window', new EventTarget());
-	vi.stubGlobal('fetch', vi.fn(async () => ({ status: 200 })));
+	vi.stubGlobal(
+		'fetch',
+		vi.fn(async () => ({ status: 200 }))
+	);
 	FakeSource.all.length = 0;
 	page.visibilityState = 'visible';
 	floor = new LiveFloor('saltmarsh-ground');

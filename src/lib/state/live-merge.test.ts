@@ -30,7 +30,10 @@ const alarm = (id: number, revision: number, state: LiveAlarm['state'] = 'unackn
 
 describe('mergeDelta', () => {
 	it('replaces in place, appends the new and drops the gone', () => {
-		const next = mergeDelta(frame(robot('a'), robot('b'), robot('c')), delta({ robots: [robot('b', 7), robot('d')], robots_gone: ['a'] }));
+		const next = mergeDelta(
+			frame(robot('a'), robot('b'), robot('c')),
+			delta({ robots: [robot('b', 7), robot('d')], robots_gone: ['a'] })
+		);
 		expect(next.robots.map(({ key, x_m }) => [key, x_m])).toEqual([
 			['b', 7],
 			['c', 0],
@@ -60,7 +63,10 @@ describe('mergeAlarm', () => {
 	it('ends at the highest revision in whatever order the news come', () => {
 		fc.assert(
 			fc.property(fc.shuffledSubarray([1, 2, 3, 4, 5], { minLength: 1 }), (revisions) => {
-				const end = revisions.reduce<readonly LiveAlarm[]>((list, revision) => mergeAlarm(list, alarm(7, revision)), []);
+				const end = revisions.reduce<readonly LiveAlarm[]>(
+					(list, revision) => mergeAlarm(list, alarm(7, revision)),
+					[]
+				);
 				expect(end).toEqual([alarm(7, Math.max(...revisions))]);
 			})
 		);

@@ -15,7 +15,12 @@ export const load: LayoutServerLoad = async ({ locals }) => {
 			mayAcknowledge: hasRole(locals.user, 'operator'),
 			mayReadRejected: hasRole(locals.user, 'maintainer', 'read')
 		},
-		floors: floors.map(({ key, name, venue_key, venue_name }) => ({ key, name, venue: venue_key, venueName: venue_name })),
+		floors: floors.map(({ key, name, venue_key, venue_name }) => ({
+			key,
+			name,
+			venue: venue_key,
+			venueName: venue_name
+		})),
 		venue: first
 			? { key: first.venue_key, name: first.venue_name, timeZone: first.time_zone }
 			: { key: '', name: 'No venue yet', timeZone: 'UTC' }

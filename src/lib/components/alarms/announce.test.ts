@@ -2,7 +2,8 @@ import { expect, it } from 'vitest';
 import type { LiveAlarm } from '../../contracts/live.ts';
 import { announceAlarms } from './announce.ts';
 
-const alarm = (priority: string) => ({ priority, place: 'Food court', what: 'P3 stopped', action: 'Send someone.' }) as LiveAlarm;
+const alarm = (priority: string) =>
+	({ priority, place: 'Food court', what: 'P3 stopped', action: 'Send someone.' }) as LiveAlarm;
 
 it('reads a single alarm in full: place, robot, what to do', () => {
 	expect(announceAlarms([alarm('medium')])).toEqual({

@@ -3,8 +3,13 @@ import { describe, expect, it } from 'vitest';
 import type { AlarmPriority, AlarmState, LiveAlarm } from '../../contracts/live.ts';
 import { arrangeSlips, orderSlips } from './slips.ts';
 
-const alarm = (id: number, priority: AlarmPriority, onset_ms: number, acknowledged = false, state: AlarmState = 'unacknowledged') =>
-	({ id, priority, onset_ms, state, acknowledged_at_ms: acknowledged ? 1 : null }) as LiveAlarm;
+const alarm = (
+	id: number,
+	priority: AlarmPriority,
+	onset_ms: number,
+	acknowledged = false,
+	state: AlarmState = 'unacknowledged'
+) => ({ id, priority, onset_ms, state, acknowledged_at_ms: acknowledged ? 1 : null }) as LiveAlarm;
 const ids = (alarms: readonly LiveAlarm[]) => alarms.map(({ id }) => id);
 
 describe('orderSlips', () => {

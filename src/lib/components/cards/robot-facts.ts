@@ -37,7 +37,12 @@ export function describeRoom({ room_alone_m_s: alone, room_shared_m_s: shared }:
 const yesNo = (value: boolean | null, yes: string, no: string) => (value === null ? 'not known' : value ? yes : no);
 
 /** @param zoneName name of the zone it is in; null outside all zones */
-export function robotFacts(robot: LiveRobot, zoneName: string | null, frameMs: number, now: number): [string, string][] {
+export function robotFacts(
+	robot: LiveRobot,
+	zoneName: string | null,
+	frameMs: number,
+	now: number
+): [string, string][] {
 	return [
 		['Where', zoneName ?? (robot.x_m === null ? 'not known' : 'outside all zones')],
 		['Position', describePose(robot, frameMs, now)],

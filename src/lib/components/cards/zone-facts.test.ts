@@ -31,5 +31,9 @@ it('a level names its scheme', () => {
 });
 
 it('a private zone tells nothing about people', () => {
-	expect(zoneFacts({ ...zone, private: true, persons: 7, density_per_m2: 2 }).flat().join()).not.toMatch(/\d/);
+	expect(
+		zoneFacts({ ...zone, private: true, persons: 7, density_per_m2: 2 })
+			.flat()
+			.join()
+	).not.toMatch(/\d/);
 });

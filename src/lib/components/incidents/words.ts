@@ -38,6 +38,8 @@ export function describeEvidence(evidence: Evidence): string {
 	const alone = evidence.room_alone_m_s;
 	const shared = evidence.room_shared_m_s;
 	const room =
-		alone === null && shared === null ? 'room to move not measured' : `room alone ${speed(alone)}, shared ${speed(shared)}`;
+		alone === null && shared === null
+			? 'room to move not measured'
+			: `room alone ${speed(alone)}, shared ${speed(shared)}`;
 	return `${who}${closest}, density ${density(density_per_m2)}${covered}; ${room}`;
 }

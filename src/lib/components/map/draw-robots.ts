@@ -24,7 +24,7 @@ export const isCompact = ({ pxPerM }: View): boolean => pxPerM < COMPACT_BELOW;
 export const pinRadius = (view: View): number => (isCompact(view) ? COMPACT_PIN_RADIUS : PIN_RADIUS);
 
 /** How many times larger than true scale robots of this length are drawn, 1 when to scale. */
-export const enlargement = (view: View, length: number): number => 
+export const enlargement = (view: View, length: number): number =>
 	Math.max(1, (isCompact(view) ? LEAST_COMPACT_PX : LEAST_PX) / (length * view.pxPerM));
 
 /** px from the middle of a robot to the outside of its mark. */
@@ -104,7 +104,14 @@ export function drawPin(ctx: Ctx, x: number, y: number, lift: number, radius: nu
 }
 
 /** A trail that fades in 20 s. */
-export function drawTrail(ctx: Ctx, view: View, trail: readonly TrailPoint[], head: Placed, nowMs: number, ink: Ink): void {
+export function drawTrail(
+	ctx: Ctx,
+	view: View,
+	trail: readonly TrailPoint[],
+	head: Placed,
+	nowMs: number,
+	ink: Ink
+): void {
 	if (trail.length === 0) return;
 	ctx.strokeStyle = ink.ink;
 	ctx.lineWidth = 1.5;

@@ -23,7 +23,8 @@ export function unpackField(field: LiveField): Uint8Array {
 }
 
 /** persons/m² of a cell value; NaN when unseen. */
-export const densityOf = (value: number, maxPerM2: number): number => (value === UNSEEN ? NaN : (value / TOP) * maxPerM2);
+export const densityOf = (value: number, maxPerM2: number): number =>
+	value === UNSEEN ? NaN : (value / TOP) * maxPerM2;
 
 /**
  * Paints cells into RGBA, top row first. An unseen cell is fully transparent, so that the hatching below shows; a seen

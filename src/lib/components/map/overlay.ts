@@ -2,7 +2,16 @@
 
 import type { LiveHalt } from '../../contracts/live.ts';
 import type { Related, Selection } from '../../state/selection.ts';
-import { describeOnPlan, drawGoal, drawPin, drawRobot, drawTrail, isCompact, pinRadius, reachPx } from './draw-robots.ts';
+import {
+	describeOnPlan,
+	drawGoal,
+	drawPin,
+	drawRobot,
+	drawTrail,
+	isCompact,
+	pinRadius,
+	reachPx
+} from './draw-robots.ts';
 import { drawZoneNames, drawZones, write } from './draw-zones.ts';
 import type { Ink } from './ink.ts';
 import { placeLabels, type Box, type LabelWish, type Side } from './place-labels.ts';
@@ -90,7 +99,14 @@ export class Overlay {
 		ctx.globalAlpha = 1;
 	}
 
-	#drawRobots(ctx: CanvasRenderingContext2D, view: View, ink: Ink, related: Related, nowMs: number, written: readonly Box[]): void {
+	#drawRobots(
+		ctx: CanvasRenderingContext2D,
+		view: View,
+		ink: Ink,
+		related: Related,
+		nowMs: number,
+		written: readonly Box[]
+	): void {
 		const { scene } = this;
 		const serverNow = scene.frameMs + nowMs - scene.receivedMs;
 		const halts = new Map(scene.halts.map((halt) => [halt.robot, halt]));
@@ -109,7 +125,13 @@ export class Overlay {
 			drawRobot(ctx, view, robot, shape, at, ink, selected);
 			const reach = reachPx(view, shape);
 			this.#spots.push({ selection: { kind: 'robot', id: robot.key }, x, y, radius: reach });
-			if (halt) pins.push({ halt, x: screenX(view, halt.x_m), y: screenY(view, halt.y_m), lift: reach + (isCompact(view) ? 5 : 9) });
+			if (halt)
+				pins.push({
+					halt,
+					x: screenX(view, halt.x_m),
+					y: screenY(view, halt.y_m),
+					lift: reach + (isCompact(view) ? 5 : 9)
+				});
 			const words = isCompact(view) && !selected ? '' : describeOnPlan(robot, halt, serverNow, scene.frameMs);
 			const text = words ? `${robot.mark}\u2002${words}` : robot.mark;
 			const bad = halt !== undefined || robot.condition === 'fault' || robot.condition === 'silent';

@@ -1,7 +1,15 @@
 import { describe, expect, it } from 'vitest';
 import { placeLabels, type LabelWish, type Side } from './place-labels.ts';
 
-const wish = (key: string, x: number, y = 0, must = false): LabelWish => ({ key, x, y, gap: 8, width: 20, height: 12, must });
+const wish = (key: string, x: number, y = 0, must = false): LabelWish => ({
+	key,
+	x,
+	y,
+	gap: 8,
+	width: 20,
+	height: 12,
+	must
+});
 const sides = (wishes: LabelWish[], before: [string, Side][] = []) =>
 	placeLabels(wishes, new Map(before)).map(({ key, side }) => `${key} ${side}`);
 

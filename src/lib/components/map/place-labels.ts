@@ -47,7 +47,10 @@ export function placeLabels(
 	written: readonly Box[] = [],
 	view: { readonly width: number; readonly height: number } = { width: Infinity, height: Infinity }
 ): PlacedLabel[] {
-	const taken: Box[] = [...written, ...wishes.map(({ x, y, gap }) => ({ x: x - gap / 2, y: y - gap / 2, w: gap, h: gap }))];
+	const taken: Box[] = [
+		...written,
+		...wishes.map(({ x, y, gap }) => ({ x: x - gap / 2, y: y - gap / 2, w: gap, h: gap }))
+	];
 	const placed: PlacedLabel[] = [];
 	for (const wish of wishes) {
 		const had = before.get(wish.key);

@@ -188,9 +188,7 @@ function fitOf(plan: Plan, margins: Margins, animate: boolean) {
 
 function inSight(view: View, margins: Margins, x: number, y: number): boolean {
 	const [px, py] = [screenX(view, x), screenY(view, y)];
-	return (
-		px > margins.left && px < view.width - margins.right && py > margins.top && py < view.height - margins.bottom
-	);
+	return px > margins.left && px < view.width - margins.right && py > margins.top && py < view.height - margins.bottom;
 }
 
 /** Puts the density into the image layer; without a field the whole floor counts as unobserved. */

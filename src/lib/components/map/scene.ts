@@ -36,7 +36,12 @@ export class Scene {
 		still: () => boolean
 	) {
 		this.shapes = new Map(shapes.map((shape) => [shape.key, shape]));
-		this.zones = plan.zones.map((zone) => ({ zone, label: computeLabelPoint(zone.polygon, plan.walkable.holes), live: null, isoline: [] }));
+		this.zones = plan.zones.map((zone) => ({
+			zone,
+			label: computeLabelPoint(zone.polygon, plan.walkable.holes),
+			live: null,
+			isoline: []
+		}));
 		this.robotMotion = new Motion(still);
 		this.personMotion = new Motion(still);
 	}

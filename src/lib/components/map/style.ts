@@ -31,8 +31,12 @@ export function buildStyle(plan: Plan, ink: Ink): StyleSpecification {
 		version: 8,
 		sources: {
 			floor: geojson(feature({ type: 'Polygon', coordinates: rings(plan.walkable) })),
-			around: geojson(feature({ type: 'Polygon', coordinates: [lngLatRing(farAround(box)), lngLatRing(plan.walkable.outer)] })),
-			fixtures: geojson(...plan.walkable.holes.map((hole) => feature({ type: 'Polygon', coordinates: [lngLatRing(hole)] }))),
+			around: geojson(
+				feature({ type: 'Polygon', coordinates: [lngLatRing(farAround(box)), lngLatRing(plan.walkable.outer)] })
+			),
+			fixtures: geojson(
+				...plan.walkable.holes.map((hole) => feature({ type: 'Polygon', coordinates: [lngLatRing(hole)] }))
+			),
 			walls: geojson(
 				feature({
 					type: 'MultiLineString',
@@ -53,11 +57,28 @@ export function buildStyle(plan: Plan, ink: Ink): StyleSpecification {
 				paint: { 'raster-fade-duration': 0, 'raster-resampling': 'linear' }
 			},
 			{ id: 'around', type: 'fill', source: 'around', paint: { 'fill-color': ink.paper, 'fill-antialias': false } },
-			{ id: 'zones', type: 'line', source: 'zones', paint: { 'line-color': ink.rule, 'line-dasharray': [6, 3], 'line-width': 0.75 } },
+			{
+				id: 'zones',
+				type: 'line',
+				source: 'zones',
+				paint: { 'line-color': ink.rule, 'line-dasharray': [6, 3], 'line-width': 0.75 }
+			},
 			{ id: 'fixtures', type: 'fill', source: 'fixtures', paint: { 'fill-color': ink.hairline } },
 			{ id: 'fixture-edges', type: 'line', source: 'fixtures', paint: { 'line-color': ink.ink, 'line-width': 1 } },
-			{ id: 'walls', type: 'line', source: 'walls', layout: { 'line-cap': 'square' }, paint: { 'line-color': ink.ink, 'line-width': metreWidth(0.2, 1.5) } },
-			{ id: 'outer-wall', type: 'line', source: 'floor', layout: { 'line-join': 'miter' }, paint: { 'line-color': ink.ink, 'line-width': metreWidth(0.35, 2) } }
+			{
+				id: 'walls',
+				type: 'line',
+				source: 'walls',
+				layout: { 'line-cap': 'square' },
+				paint: { 'line-color': ink.ink, 'line-width': metreWidth(0.2, 1.5) }
+			},
+			{
+				id: 'outer-wall',
+				type: 'line',
+				source: 'floor',
+				layout: { 'line-join': 'miter' },
+				paint: { 'line-color': ink.ink, 'line-width': metreWidth(0.35, 2) }
+			}
 		]
 	};
 }

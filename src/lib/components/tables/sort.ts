@@ -16,7 +16,11 @@ export function sortRows<Row>(rows: readonly Row[], value: (row: Row) => Value, 
 }
 
 /** Rows in a remembered order of keys; rows that are not remembered come last. */
-export function keepOrder<Row>(rows: readonly Row[], key: (row: Row) => string, order: readonly string[]): readonly Row[] {
+export function keepOrder<Row>(
+	rows: readonly Row[],
+	key: (row: Row) => string,
+	order: readonly string[]
+): readonly Row[] {
 	const place = new Map(order.map((name, i) => [name, i]));
 	return rows.toSorted((a, b) => (place.get(key(a)) ?? order.length) - (place.get(key(b)) ?? order.length));
 }

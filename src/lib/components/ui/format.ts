@@ -53,7 +53,8 @@ export function clockOffset(ms: number | null): string {
 export const people = (count: number): string => (count === 1 ? `1${NB}person` : `${count}${NB}people`);
 
 /** `1 robot`, `3 robots`: a count with its noun. */
-export const counted = (count: number, one: string, many = `${one}s`): string => `${count}${NB}${count === 1 ? one : many}`;
+export const counted = (count: number, one: string, many = `${one}s`): string =>
+	`${count}${NB}${count === 1 ? one : many}`;
 
 /** Wall clock in the venue: `14:03:12`. */
 export const clockTime = (ms: number, timeZone: string): string => formatter('clock', timeZone).format(ms);

@@ -2,7 +2,8 @@ import { describe, expect, it } from 'vitest';
 import { describeFreshness } from './freshness.ts';
 
 const AT = Date.UTC(2026, 2, 3, 14, 3, 12);
-const words = (...args: Parameters<typeof describeFreshness>) => describeFreshness(...args).words.replaceAll('\u00a0', ' ');
+const words = (...args: Parameters<typeof describeFreshness>) =>
+	describeFreshness(...args).words.replaceAll('\u00a0', ' ');
 
 describe('describeFreshness', () => {
 	it('says how long ago while frames come', () => {

@@ -202,6 +202,20 @@ describe('invariants', () => {
 		);
 	});
 
+	it('tiles the floor with persons on a lattice, where many are equally near', () => {
+		const spot = fc.tuple(fc.nat(40), fc.nat(24));
+		const lattice = fc
+			.array(spot, { size: 'max', maxLength: 100 })
+			.map((spots) => flat(...spots.map(([i, j]) => [i / 2, j / 2] as const)));
+		fc.assert(
+			fc.property(lattice, cutoffs, (points, cutoff) => {
+				const got = computeVoronoiDensity({ points, walkable: HALL, measurement: HALL, cutoff });
+				expect(got.densityOwnPiece! * got.measuredArea).toBeCloseTo(got.used, 7);
+				if (cutoff === null && got.used > 0) expect(sum(got.cellAreas)).toBeCloseTo(computePolygonArea(HALL), 7);
+			})
+		);
+	});
+
 	it('adds up over zones that tile the floor', () => {
 		const zones = [rectangle(0, 0, 5, 12), rectangle(5, 0, 15, 4.5), rectangle(5, 4.5, 15, 7.5)];
 		fc.assert(

@@ -17,7 +17,7 @@ import {
 export type HaltKind = 'freeze' | 'stall' | 'dither' | 'fault' | 'silent';
 
 /** Why a halt is over. `planned`: at a waiting place or near the goal. */
-export type HaltEnd = 'progress' | 'task_ended' | 'task_changed' | 'manual' | 'charging' | 'paused' | 'planned';
+type HaltEnd = 'progress' | 'task_ended' | 'task_changed' | 'manual' | 'charging' | 'paused' | 'planned';
 
 /** What is known about a robot at one moment. Seconds, metres, floor frame. */
 export interface RobotSample {

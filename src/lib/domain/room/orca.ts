@@ -19,7 +19,7 @@ export interface OrcaAgent {
 }
 
 /** Permitted are the velocities w with (w − point)·normal ≥ 0. */
-export interface HalfPlane {
+interface HalfPlane {
 	readonly point: Point;
 	/** Unit vector */
 	readonly normal: Point;

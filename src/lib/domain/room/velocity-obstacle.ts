@@ -48,7 +48,7 @@ export const FX = 13;
 export const FY = 14;
 
 export const DISC = 0;
-export const WALL = 1;
+const WALL = 1;
 export const TOUCHING = 2;
 
 /**

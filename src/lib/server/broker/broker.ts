@@ -90,10 +90,12 @@ export async function startBroker(options: BrokerOptions): Promise<Broker> {
 		}
 	});
 	aedes.on('clientDisconnect', gatekeeper.forget);
-	aedes.on('clientError', (client: Client, error: Error) => refusals.count('connection', client.id, error.message));
-	aedes.on('connectionError', (_client: Client, error: Error) =>
-		refusals.count('connection', undefined, error.message)
-	);
+	const ended = (client: Client | null, error: Error & { errorCode?: number }) => {
+		// A CONNACK with an error is a refused login, which is counted where it is refused.
+		if (error.errorCode === undefined) refusals.count('connection', client?.id ?? undefined, error.message);
+	};
+	aedes.on('clientError', ended);
+	aedes.on('connectionError', ended);
 	(aedes as NodeJS.EventEmitter).on('error', (error: Error) => options.log.error(error, 'broker'));
 
 	const sockets = new Set<Socket>();
