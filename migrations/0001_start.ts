@@ -1,6 +1,6 @@
 /** First tables. STRICT, so that a wrong type is an error and not a surprise; times are ms since the epoch. */
 
-import { sql, type Kysely } from 'kysely';
+import { sql, type Migration } from 'kysely';
 
 const TABLES = [
 	`CREATE TABLE venue (
@@ -255,6 +255,8 @@ const TABLES = [
 	) STRICT, WITHOUT ROWID`
 ];
 
-export async function up(db: Kysely<unknown>): Promise<void> {
-	for (const statement of TABLES) await sql.raw(statement).execute(db);
-}
+export const start: Migration = {
+	async up(db) {
+		for (const statement of TABLES) await sql.raw(statement).execute(db);
+	}
+};

@@ -250,7 +250,7 @@ function describe(
 		roomShared: roomShared === null ? null : round(roomShared, 3),
 		limitedByPeople: roomAlone === null ? null : verdict !== 'open',
 		observedShare: round(observedShare, 3),
-		flexibility: DEFAULT_FLEXIBILITY_RULE.defaultValue,
+		flexibility: DEFAULT_FLEXIBILITY_RULE.fallback,
 		verdict
 	};
 	const endedMs = Math.max(Math.round(end), detectedMs + 1000);

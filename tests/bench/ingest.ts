@@ -7,7 +7,8 @@ import { robotTopic } from '../../src/lib/contracts/mqtt.ts';
 import { robotUsername } from '../../src/lib/server/broker/credentials.ts';
 import { createIntake } from '../../src/lib/server/ingest/intake.ts';
 import { startMqttSource } from '../../src/lib/server/ingest/mqtt-source.ts';
-import { LOADER, startOwnBroker } from '../support/brokers-own.ts';
+import { SOURCE_LOADER } from '../../src/lib/server/threads/locate.ts';
+import { startOwnBroker } from '../support/brokers-own.ts';
 import { SERVICE, until, VENUE, type TestBroker } from '../support/brokers.ts';
 
 export interface IngestBench {
@@ -124,7 +125,7 @@ interface Phase {
 
 async function measure(url: string, reader: Reading['reader'], seconds: number): Promise<Phase> {
 	const workerData: Reading = { url, reader, seconds, password: SERVICE.password };
-	const worker = new Worker(new URL(import.meta.url), { workerData, execArgv: ['--import', LOADER] });
+	const worker = new Worker(new URL(import.meta.url), { workerData, execArgv: ['--import', SOURCE_LOADER] });
 	return new Promise((resolve, reject) => {
 		worker.once('message', resolve);
 		worker.once('error', reject);

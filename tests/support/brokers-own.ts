@@ -8,11 +8,10 @@ import type { BrokerStart, FromBroker, ToBroker } from '../../src/lib/contracts/
 import type { RobotCredential } from '../../src/lib/server/broker/credentials.ts';
 import { openDatabase, type OpenDatabase } from '../../src/lib/server/db/connection.ts';
 import { migrateToLatest } from '../../src/lib/server/db/migrate.ts';
+import { SOURCE_LOADER } from '../../src/lib/server/threads/locate.ts';
 import { freePort, robotSet, SERVICE, VENUE, until, type BrokerKind, type TestBroker } from './brokers.ts';
 
 const ENTRY = new URL('../../src/lib/server/threads/broker.ts', import.meta.url);
-/** `--import tsx` leaves worker threads alone, so its loader is registered inside the thread. */
-export const LOADER = `data:text/javascript,import{register}from'node:module';register('tsx/esm','${import.meta.url}',{data:{}})`;
 
 export const OWN_BROKER: BrokerKind = { name: 'the own broker', start: () => startOwnBroker() };
 
@@ -70,7 +69,7 @@ export async function startBrokerThread(start: Partial<BrokerStart>): Promise<Br
 		log_level: 'silent',
 		...start
 	};
-	const worker = new Worker(ENTRY, { workerData, execArgv: ['--import', LOADER] });
+	const worker = new Worker(ENTRY, { workerData, execArgv: ['--import', SOURCE_LOADER] });
 	const said: FromBroker[] = [];
 	const trouble: Error[] = [];
 	let ended = false;

@@ -132,7 +132,7 @@ export function eventFor(request: Request, address = '127.0.0.1'): RequestEvent 
 	return event as unknown as RequestEvent;
 }
 
-export interface SetCookie {
+interface SetCookie {
 	readonly value: string;
 	readonly options: Parameters<Cookies['set']>[2];
 }

@@ -23,8 +23,8 @@ export const ALARM_STATES = [
 	'returned',
 	'cleared'
 ] as const satisfies readonly AlarmState[];
-export const ALARM_TYPES = [...HALT_KINDS, 'ingest', 'duplicate_credential'] as const satisfies readonly AlarmType[];
-export const ALARM_PRIORITIES = ['high', 'medium', 'low'] as const satisfies readonly AlarmPriority[];
+const ALARM_TYPES = [...HALT_KINDS, 'ingest', 'duplicate_credential'] as const satisfies readonly AlarmType[];
+const ALARM_PRIORITIES = ['high', 'medium', 'low'] as const satisfies readonly AlarmPriority[];
 
 /** Error answer, `application/problem+json` (RFC 9457). */
 export const Problem = z.object({
@@ -128,7 +128,7 @@ export const Alarm = z.object({
 /** GET /alarms: newest first. POST /alarms/{id}/acknowledge answers with one `Alarm`. */
 export const AlarmPage = z.object({ alarms: z.array(Alarm), next_cursor: z.string().nullable() });
 
-export const RobotModelAnswer = z.object({
+const RobotModelAnswer = z.object({
 	key: z.string(),
 	name: z.string(),
 	letter: z.string(),

@@ -36,6 +36,8 @@ export class LiveFloor {
 	readonly #lag = $state<{ ms: number | null }>({ ms: null });
 
 	readonly #url: string;
+	// Listeners stand outside the reactive graph on purpose.
+	// eslint-disable-next-line svelte/prefer-svelte-reactivity
 	readonly #listeners = new Set<FrameListener>();
 	#source: EventSource | null = null;
 	#lastEventAt = 0;

@@ -20,7 +20,7 @@ type Script = (t: number) => Observation[];
 /** Steps at 10 Hz from T0 for `seconds`; `script` says what is heard in the tick that ends at T0 + t. */
 function run(script: Script, seconds: number, at: FloorContext = context()) {
 	let current: FloorState = createFloorState(at);
-	const events: (EngineEvent & { seenAt: number })[] = [];
+	const events: Seen[] = [];
 	const frames: Frame[] = [];
 	for (let tick = 0; tick <= seconds * 10; tick++) {
 		const t = tick / 10;
@@ -48,7 +48,10 @@ const drive =
 		return everySecond(t) ? [state({ t: T0 + t }), ...heard] : heard;
 	};
 
-const starts = (events: readonly EngineEvent[]) => events.filter((event) => event.type === 'halt_started');
+type Seen = EngineEvent & { readonly seenAt: number };
+type Start = Extract<EngineEvent, { type: 'halt_started' }> & { readonly seenAt: number };
+
+const starts = (events: readonly Seen[]): Start[] => events.filter((event): event is Start => event.type === 'halt_started');
 
 describe('halts', () => {
 	/** A wall of people from side to side. */

@@ -111,6 +111,7 @@ function expectNear(
 	const expected: Expected[] = [];
 	tracks.forEach((track, index) => {
 		const elapsed = time - track.updatedAt;
+		if (Math.abs(elapsed) > rule.missTimeout) return;
 		const { reach } = coasting(elapsed);
 		const x = track.x + reach * track.vx;
 		const y = track.y + reach * track.vy;

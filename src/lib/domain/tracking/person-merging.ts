@@ -47,7 +47,7 @@ export function mergeTracks(
 		const track = list[index]!;
 		const near = nearestTwin(track, list, others, recent, rule);
 		if (near < 0) {
-			if (track.closeTo) list[index] = { ...track, closeTo: null };
+			if (track.closeTo && !staysClose(track, list, rule)) list[index] = { ...track, closeTo: null };
 			continue;
 		}
 		const twin = list[near]!;
@@ -114,6 +114,18 @@ function nearestTwin(
 		nearestAt = distance;
 	}
 	return nearest;
+}
+
+/** A noisy reading or two does not end it: only being clearly apart does. */
+function staysClose(
+	{ x, y, closeTo, updatedAt }: PersonTrack,
+	list: readonly (PersonTrack | null)[],
+	rule: TrackerRule
+) {
+	const other = list.find((candidate) => candidate?.id === closeTo?.id);
+	if (!other) return false;
+	const there = predictTrack(other, updatedAt, rule);
+	return Math.hypot(there.x - x, there.y - y) < 2 * rule.mergeWithin;
 }
 
 /** Did any robot report both in one scan since then? */

@@ -10,7 +10,7 @@ import { Failure } from '../../domain/failure.ts';
 const OPTIONS = { algorithm: 2, memoryCost: 19 * 1024, timeCost: 2, parallelism: 1 } as const;
 
 /** With a password as the only factor, NIST SP 800-63B-4 asks for 15 characters and at least 64 to be allowed. */
-export const PASSWORD_LENGTH = { min: 15, max: 256 } as const;
+const PASSWORD_LENGTH = { min: 15, max: 256 } as const;
 
 /** Hash to store. @throws Failure 'bad_input' when the password is too short or too long */
 export async function hashPassword(password: string): Promise<string> {

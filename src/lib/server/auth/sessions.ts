@@ -19,14 +19,14 @@ export interface SessionUser {
 	readonly role: Role;
 }
 
-export interface SignedIn {
+interface SignedIn {
 	readonly user: SessionUser;
 	/** Goes into the cookie and nowhere else. */
 	readonly token: string;
 	readonly expiresAt: Date;
 }
 
-export interface Validated {
+interface Validated {
 	readonly user: SessionUser;
 	/** Stored id of the session, not the token */
 	readonly sessionId: string;

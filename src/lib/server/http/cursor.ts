@@ -7,7 +7,7 @@ export interface Cursor<Id extends string | number> {
 	readonly id: Id;
 }
 
-export const encodeCursor = ({ atMs, id }: Cursor<string | number>): string =>
+const encodeCursor = ({ atMs, id }: Cursor<string | number>): string =>
 	Buffer.from(JSON.stringify([atMs, id])).toString('base64url');
 
 /** The text of a cursor as a query parameter. */

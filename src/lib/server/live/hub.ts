@@ -5,7 +5,7 @@ import type { LiveAlarm, LiveEvent, LiveField, LiveFrame, LiveHealth } from '../
 import { canFollow, computeDelta } from './delta.ts';
 import { EventLog, sentEvent, type SentEvent } from './event-log.ts';
 
-export interface LiveReader {
+interface LiveReader {
 	next(event: SentEvent): void;
 	/** No more events will come. */
 	close(): void;

@@ -6,7 +6,7 @@ import { fileURLToPath } from 'node:url';
 import { Worker, type WorkerOptions } from 'node:worker_threads';
 
 /** tsx asked for with `--import` leaves worker threads alone, so its loader is registered inside the thread. */
-const SOURCE_LOADER = `data:text/javascript,import{register}from'node:module';register('tsx/esm','${import.meta.url}',{data:{}})`;
+export const SOURCE_LOADER = `data:text/javascript,import{register}from'node:module';register('tsx/esm','${import.meta.url}',{data:{}})`;
 
 /** Starts `name` as a worker thread. Under the build it is plain JavaScript; from sources it runs through tsx. */
 export function startWorker(name: 'broker' | 'engine', options: WorkerOptions): Worker {
