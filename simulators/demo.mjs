@@ -1,7 +1,7 @@
 /** `npm run demo`: everything on this machine, from a fresh clone to a live floor. Plain Node, because nothing is installed yet. */
 
 import { spawn, spawnSync } from 'node:child_process';
-import { createWriteStream, existsSync, mkdirSync, readdirSync, readFileSync, statSync } from 'node:fs';
+import { createWriteStream, existsSync, mkdirSync, openSync, readdirSync, readFileSync, statSync } from 'node:fs';
 import { createServer } from 'node:net';
 import { dirname, join } from 'node:path';
 import { fileURLToPath } from 'node:url';
@@ -48,7 +48,7 @@ async function main() {
 
 	if (!existsSync('node_modules/.package-lock.json'))
 		step('Installing packages (npm ci)', 'npm', ['ci', '--no-audit', '--no-fund']);
-	if (isBuildStale()) step('Building', 'npm', ['run', 'build', '--silent']);
+	if (isBuildStale()) step('Building (about a minute)', 'npm', ['run', 'build', '--silent'], process.env, 'build.log');
 	// The demo always has its own broker and says nothing to one that is set up for something else.
 	const env = {
 		...process.env,
@@ -104,10 +104,11 @@ function fail(message) {
 	process.exit(1);
 }
 
-/** Runs one step to its end; its output goes to the terminal. */
-function step(what, command, args, env = process.env) {
+/** Runs one step to its end; its output goes to the terminal, or to a file in data/ when it is long. */
+function step(what, command, args, env = process.env, logName = null) {
 	console.log(`${what} …`);
 	const shell = process.platform === 'win32' && command === 'npm';
+	const out = logName === null ? 'inherit' : openSync(join(DATA, logName), 'w');
 	const { status, error } = spawnSync(command, args, {
 		cwd: ROOT,
 		env,
@@ -115,7 +116,7 @@ function step(what, command, args, env = process.env) {
 		shell
 	});
 	if (error) throw new Error(`${what} failed: ${error.message}`);
-	if (status !== 0) throw new Error(`${what} failed.`);
+	if (status !== 0) throw new Error(logName === null ? `${what} failed.` : `${what} failed; see data/${logName}.`);
 }
 
 /** Starts a Node child that runs on; its output goes to data/NAME.log. The demo ends when a needed one does. */

@@ -53,6 +53,8 @@ export function startFleet(options: FleetOptions): RunningFleet {
 		})
 	);
 
+	// Building the venue took a while; the robots' clocks start now.
+	world.clock.epoch = Date.now() / 1000;
 	let last = performance.now();
 	let owed = 0;
 	const timer = setInterval(() => {

@@ -5,6 +5,8 @@ import type { LiveHealth } from '../contracts/live.ts';
 import type { FromEngine } from '../contracts/threads.ts';
 import { readLiveAlarms } from './alarms/read.ts';
 import { createAuth, type Auth } from './auth/sessions.ts';
+import { writeMosquittoFiles } from './broker/mosquitto-files.ts';
+import { readRobotCredentials } from './broker/read-credentials.ts';
 import { openDatabase } from './db/connection.ts';
 import { migrateToLatest } from './db/migrate.ts';
 import type { Database } from './db/schema.ts';
@@ -68,6 +70,7 @@ export async function startApp(
 		});
 		const auth = createAuth({ db, sessionDays: settings.sessionDays, metrics });
 
+		await writeBrokerFiles(settings, db, log);
 		const threads = await start({
 			settings,
 			log,
@@ -87,6 +90,14 @@ export async function startApp(
 		await stop();
 		throw cause;
 	}
+}
+
+/** An external Mosquitto learns of our robots by files; ours reads the database itself. */
+async function writeBrokerFiles({ mosquittoDir, mqtt }: Settings, db: Kysely<Database>, log: Log): Promise<void> {
+	if (mosquittoDir === null) return;
+	const { without } = await writeMosquittoFiles(mosquittoDir, await readRobotCredentials(db), mqtt);
+	log.info({ folder: mosquittoDir }, 'files for Mosquitto written; send it a SIGHUP');
+	if (without.length > 0) log.warn({ robots: without }, 'these robots need a new credential to sign in at Mosquitto');
 }
 
 function pass(message: FromEngine, hub: LiveHub): void {

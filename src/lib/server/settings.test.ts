@@ -27,6 +27,12 @@ describe('settings', () => {
 		expect(mqtt).toMatchObject({ url: 'mqtts://broker.example.org:8883', username: 'desk', password: '' });
 	});
 
+	it('write files for a Mosquitto only when they say how to reach it', () => {
+		const broker = { MQTT_URL: 'mqtt://127.0.0.1', MQTT_USERNAME: 'desk', MQTT_PASSWORD: 'secret' };
+		expect(() => readSettings({ MOSQUITTO_DIR: 'data/mosquitto' })).toThrow(/needs MQTT_URL/);
+		expect(readSettings({ MOSQUITTO_DIR: 'data/mosquitto', ...broker }).mosquittoDir).toBe('data/mosquitto');
+	});
+
 	it('split the list of venues', () => {
 		expect(readSettings({ ENGINE_VENUES: 'saltmarsh, quay ,' }).engineVenues).toEqual(['saltmarsh', 'quay']);
 	});

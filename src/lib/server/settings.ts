@@ -6,31 +6,37 @@ import { Failure } from '../domain/failure.ts';
 
 const LOG_LEVELS = ['fatal', 'error', 'warn', 'info', 'debug', 'trace', 'silent'] as const;
 
-const Environment = z.object({
-	DATABASE_PATH: z.string().default('data/elbowroom.db'),
-	/** Unset: the program starts its own broker. */
-	MQTT_URL: z
-		.url({ protocol: /^(mqtts?|wss?)$/, error: 'must be an address like mqtt://broker.example.org:1883' })
-		.optional(),
-	MQTT_USERNAME: z.string().optional(),
-	MQTT_PASSWORD: z.string().optional(),
-	MQTT_PORT: z.coerce.number('must be a number').int().min(0).max(65_535).default(1883),
-	/** Only this machine unless told otherwise: 0.0.0.0 lets robots in. */
-	MQTT_HOST: z.string().default('127.0.0.1'),
-	ENGINE_VENUES: z
-		.string()
-		.default('')
-		.transform((list) =>
-			list
-				.split(',')
-				.map((key) => key.trim())
-				.filter((key) => key !== '')
-		),
-	LOG_LEVEL: z.enum(LOG_LEVELS).default('info'),
-	MOSQUITTO_DIR: z.string().optional(),
-	SESSION_DAYS: z.coerce.number('must be a number').positive().max(90).default(7),
-	METRICS_TOKEN: z.string().min(16, 'must have at least 16 characters').optional()
-});
+const Environment = z
+	.object({
+		DATABASE_PATH: z.string().default('data/elbowroom.db'),
+		/** Unset: the program starts its own broker. */
+		MQTT_URL: z
+			.url({ protocol: /^(mqtts?|wss?)$/, error: 'must be an address like mqtt://broker.example.org:1883' })
+			.optional(),
+		MQTT_USERNAME: z.string().optional(),
+		MQTT_PASSWORD: z.string().optional(),
+		MQTT_PORT: z.coerce.number('must be a number').int().min(0).max(65_535).default(1883),
+		/** Only this machine unless told otherwise: 0.0.0.0 lets robots in. */
+		MQTT_HOST: z.string().default('127.0.0.1'),
+		ENGINE_VENUES: z
+			.string()
+			.default('')
+			.transform((list) =>
+				list
+					.split(',')
+					.map((key) => key.trim())
+					.filter((key) => key !== '')
+			),
+		LOG_LEVEL: z.enum(LOG_LEVELS).default('info'),
+		MOSQUITTO_DIR: z.string().optional(),
+		SESSION_DAYS: z.coerce.number('must be a number').positive().max(90).default(7),
+		METRICS_TOKEN: z.string().min(16, 'must have at least 16 characters').optional()
+	})
+	.refine(
+		({ MOSQUITTO_DIR, MQTT_URL, MQTT_USERNAME, MQTT_PASSWORD }) =>
+			MOSQUITTO_DIR === undefined || (MQTT_URL && MQTT_USERNAME && MQTT_PASSWORD),
+		{ path: ['MOSQUITTO_DIR'], error: 'needs MQTT_URL, MQTT_USERNAME and MQTT_PASSWORD of that Mosquitto as well' }
+	);
 
 export interface Settings {
 	readonly databasePath: string;

@@ -14,7 +14,7 @@ export const KIND_WORDS: Readonly<Record<HaltKind, string>> = {
 export const VERDICT_WORDS: Readonly<Record<Verdict, string>> = {
 	open: 'There was room: look at the robot.',
 	shared: 'There was room only if people yield: the robot’s planner is too timid.',
-	packed: 'There was no room even if people yield: this is the venue’s to solve.',
+	packed: 'There was no room even if people yield: a matter for the venue, not for the robot.',
 	unseen: 'Too little was observed to say why.'
 };
 

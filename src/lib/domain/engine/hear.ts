@@ -44,6 +44,8 @@ export function hear(
 			return { ...unchanged, view: withTask(model, { ...view, state: observation }) };
 		case 'pose':
 		case 'people': {
+			// Kept by a broker since nobody knows when: it neither says where the robot is now nor what its clock shows.
+			if (observation.retained) return unchanged;
 			const timed = hearTime(rules, view, observation);
 			if (timed.time === null) return { ...unchanged, ...timed };
 			const transform = model.floor.maps[observation.map];

@@ -174,7 +174,7 @@ export function mostPairsPrice({ rows, columns, costs }: SparseCosts): number {
 	return Math.max(most, 0) + (most - least) * Math.min(rows, columns) + 1;
 }
 
-export function allowedPairs(costs: Costs, gate: number): SparseCosts {
+function allowedPairs(costs: Costs, gate: number): SparseCosts {
 	const rows = costs.length;
 	const columns = Math.max(0, ...costs.map((row) => row.length));
 	const starts = new Int32Array(rows + 1);

@@ -67,7 +67,7 @@ export interface ClockState {
 	readonly expiring: number | null;
 }
 
-export type ClockVerdict = 'ok' | 'late' | 'future' | 'stepped';
+type ClockVerdict = 'ok' | 'late' | 'future' | 'stepped';
 
 export interface ClockReading {
 	readonly state: ClockState;

@@ -111,7 +111,7 @@ function invert(c: Covariance2): Covariance2 {
 
 const scale = (c: Covariance2, by: number): Covariance2 => ({ xx: by * c.xx, xy: by * c.xy, yy: by * c.yy });
 
-export const addCovariances = (a: Covariance2, b: Covariance2): Covariance2 => ({
+const addCovariances = (a: Covariance2, b: Covariance2): Covariance2 => ({
 	xx: a.xx + b.xx,
 	xy: a.xy + b.xy,
 	yy: a.yy + b.yy

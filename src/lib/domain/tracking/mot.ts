@@ -9,7 +9,7 @@ export interface TrackingFrame {
 	readonly tracks: ReadonlyMap<string, Point>;
 }
 
-export interface FrameMatches {
+interface FrameMatches {
 	/** [truth, track], in order of the truth's identity */
 	readonly matches: readonly (readonly [truth: string, track: string])[];
 	readonly misses: number;

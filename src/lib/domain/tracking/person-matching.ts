@@ -58,7 +58,7 @@ export function matchPersons(
 	rule: TrackerRule
 ): Matching {
 	const gate = chiSquareGate(rule.gateProbability, 2);
-	const expected = expectNear(tracks, persons, robot, time, gate, rule);
+	const expected = expectNear(tracks, persons, robot, time, rule);
 	const names = new Map<string, number>();
 	expected.forEach(({ sighting }, e) => sighting && names.set(sighting.localId, e));
 
@@ -97,7 +97,6 @@ function expectNear(
 	persons: readonly PersonMeasurement[],
 	robot: string,
 	time: number,
-	gate: number,
 	rule: TrackerRule
 ): Expected[] {
 	let [minX, minY, maxX, maxY, noise] = [Infinity, Infinity, -Infinity, -Infinity, 0];

@@ -122,7 +122,7 @@ export function coasting(dt: number): { reach: number; keep: number } {
 }
 
 /** s of process noise; somebody who has stopped being seen is not unsure without limit. */
-export const noiseTime = (dt: number): number => Math.min(Math.abs(dt), WALKS_ON + FADES_IN / 2);
+const noiseTime = (dt: number): number => Math.min(Math.abs(dt), WALKS_ON + FADES_IN / 2);
 
 /** Full state of a track at a time not before it. */
 export function coastTrack(track: PersonTrack, time: number, q: number): KalmanState {

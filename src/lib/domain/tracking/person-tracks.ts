@@ -34,7 +34,7 @@ export interface PersonScan {
 }
 
 /** A measurement that was not used, and why. */
-export interface DroppedMeasurement {
+interface DroppedMeasurement {
 	readonly robot: string;
 	readonly localId: string;
 	readonly reason: 'not_a_number' | 'reported_twice';
