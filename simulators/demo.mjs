@@ -112,7 +112,7 @@ function step(what, command, args, env = process.env, logName = null) {
 	const { status, error } = spawnSync(command, args, {
 		cwd: ROOT,
 		env,
-		stdio: ['ignore', 'inherit', 'inherit'],
+		stdio: ['ignore', out, out],
 		shell
 	});
 	if (error) throw new Error(`${what} failed: ${error.message}`);

@@ -37,9 +37,7 @@ function finish(code) {
 
 /** Adds the numbers of a report; a run that ended badly without naming a failed test counts as one failure. */
 function add(file, succeeded, read) {
-	const found = existsSync(file)
-		? read(JSON.parse(readFileSync(file, 'utf8')))
-		: { passed: 0, failed: 0, skipped: 0 };
+	const found = existsSync(file) ? read(JSON.parse(readFileSync(file, 'utf8'))) : { passed: 0, failed: 0, skipped: 0 };
 	if (!succeeded && found.failed === 0) found.failed = 1;
 	for (const key of Object.keys(counts)) counts[key] += found[key];
 	return found.failed === 0;

@@ -163,7 +163,8 @@ export function toMisses({ pairs, missed, falseAlarms }: HaltMatches): string[] 
 		...pairs
 			.filter(({ truth, found }) => Math.abs(found.onset - truth.onset) > 1.5)
 			.map(
-				({ truth, found }) => `onset ${truth.robot} ${truth.kind}>${found.kind} ${s(truth.onset)} called ${s(found.onset)}`
+				({ truth, found }) =>
+					`onset ${truth.robot} ${truth.kind}>${found.kind} ${s(truth.onset)} called ${s(found.onset)}`
 			)
 	];
 }

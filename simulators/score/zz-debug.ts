@@ -29,7 +29,14 @@ const trace = [];
 const ask: [string, number][] = [
 	...m.missed.map((h) => [h.robot, h.onset] as [string, number]),
 	...m.falseAlarms.map((h) => [h.robot, h.onset] as [string, number]),
-	...m.pairs.filter(({ truth, found }) => truth.kind !== found.kind || Math.abs(truth.onset - found.onset) > 1.5 || (truth.verdict && truth.verdict !== found.verdict)).map(({ truth }) => [truth.robot, truth.onset] as [string, number])
+	...m.pairs
+		.filter(
+			({ truth, found }) =>
+				truth.kind !== found.kind ||
+				Math.abs(truth.onset - found.onset) > 1.5 ||
+				(truth.verdict && truth.verdict !== found.verdict)
+		)
+		.map(({ truth }) => [truth.robot, truth.onset] as [string, number])
 ];
 for (const [robot, t] of ask) {
 	trace.push(`== ${robot} ${t.toFixed(1)}`);

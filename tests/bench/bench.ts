@@ -29,7 +29,8 @@ function measure({ name, ours, straightforward, target_ms }: BenchPart) {
 	while (times.ours.length < 15 || (performance.now() < until && times.ours.length < 500)) {
 		times.ours.push(time(ours));
 		// A slow plain form is measured often enough to be judged, not as often as ours.
-		if (times.straightforward.length < 5 || performance.now() < until) times.straightforward.push(time(straightforward));
+		if (times.straightforward.length < 5 || performance.now() < until)
+			times.straightforward.push(time(straightforward));
 	}
 	const [mine, plain] = [median(times.ours), median(times.straightforward)];
 	const verdict = mine < target_ms ? 'within' : 'OVER';

@@ -56,7 +56,10 @@ test('an operator sees a robot get stuck in a crowd, opens its pin, acknowledges
 
 	await expect(slip).toContainText(/Foyer/);
 	await expect(slip).toContainText('Send someone');
-	await page.getByRole('button', { name: /incident|halt/i }).first().click();
+	await page
+		.getByRole('button', { name: /incident|halt/i })
+		.first()
+		.click();
 	await expect(page.getByText(/room alone/i).first()).toBeVisible();
 
 	await slip.getByRole('button', { name: 'Acknowledge' }).click();

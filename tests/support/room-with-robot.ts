@@ -72,7 +72,9 @@ const said = ({ robot = 't1', t, delay = 0.02, ahead = 0 }: At) => ({
 	retained: false
 });
 
-export const pose = (at: At & { x: number; y: number; heading?: number; speed?: number; map?: string }): PoseObservation => ({
+export const pose = (
+	at: At & { x: number; y: number; heading?: number; speed?: number; map?: string }
+): PoseObservation => ({
 	kind: 'pose',
 	...said(at),
 	map: at.map ?? 'test-map',
@@ -83,7 +85,12 @@ export const pose = (at: At & { x: number; y: number; heading?: number; speed?: 
 });
 
 export const people = (
-	at: At & { persons: readonly (readonly [x: number, y: number])[]; range?: number; sd?: number; fov?: readonly [number, number] }
+	at: At & {
+		persons: readonly (readonly [x: number, y: number])[];
+		range?: number;
+		sd?: number;
+		fov?: readonly [number, number];
+	}
 ): PeopleObservation => ({
 	kind: 'people',
 	...said(at),

@@ -2,7 +2,8 @@
 
 export type HaltKind = 'freeze' | 'stall' | 'dither' | 'fault' | 'silent';
 export type Verdict = 'open' | 'shared' | 'packed' | 'unseen';
-export type Condition = 'working' | 'idle' | 'waiting' | 'paused' | 'charging' | 'manual' | 'halted' | 'fault' | 'silent';
+export type Condition =
+	'working' | 'idle' | 'waiting' | 'paused' | 'charging' | 'manual' | 'halted' | 'fault' | 'silent';
 export type Level = 'A' | 'B' | 'C' | 'D' | 'E' | 'F';
 
 export interface LiveRobot {

@@ -61,7 +61,15 @@ export const People = z.object({
 	persons: z.array(ObservedPerson).max(2000)
 });
 
-export const RobotMode = z.enum(['automatic', 'semiautomatic', 'intervened', 'manual', 'service', 'teach_in', 'startup']);
+export const RobotMode = z.enum([
+	'automatic',
+	'semiautomatic',
+	'intervened',
+	'manual',
+	'service',
+	'teach_in',
+	'startup'
+]);
 export const ErrorLevel = z.enum(['warning', 'urgent', 'critical', 'fatal']);
 
 export const State = z.object({
@@ -85,9 +93,7 @@ export const State = z.object({
 	/** Share of a full battery, 0…1 */
 	battery: z.number().min(0).max(1),
 	localized: z.boolean(),
-	errors: z
-		.array(z.object({ code: z.string().max(120), level: ErrorLevel, text: z.string().max(500) }))
-		.max(50),
+	errors: z.array(z.object({ code: z.string().max(120), level: ErrorLevel, text: z.string().max(500) })).max(50),
 	software: z.string().max(120)
 });
 

@@ -1,19 +1,19 @@
-import { redirect } from '@sveltejs/kit';
 import { hasRole } from '$lib/server/auth/roles';
+import { requirePageRole } from '$lib/server/http/require-role';
 import { listFloors } from '$lib/server/repositories/floors';
 import type { LayoutServerLoad } from './$types';
 
 /** Who looks, and the floors there are. A page of one floor names its own venue instead of the first. */
 export const load: LayoutServerLoad = async ({ locals }) => {
-	if (!locals.user) redirect(303, '/sign-in');
+	const user = requirePageRole(locals, 'display', 'read');
 	const floors = await listFloors(locals.app.db);
 	const first = floors[0];
 	return {
 		user: {
-			name: locals.user.name,
-			role: locals.user.role,
-			mayAcknowledge: hasRole(locals.user, 'operator'),
-			mayReadRejected: hasRole(locals.user, 'maintainer', 'read')
+			name: user.name,
+			role: user.role,
+			mayAcknowledge: hasRole(user, 'operator'),
+			mayReadRejected: hasRole(user, 'maintainer', 'read')
 		},
 		floors: floors.map(({ key, name, venue_key, venue_name }) => ({
 			key,

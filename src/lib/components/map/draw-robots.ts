@@ -103,28 +103,32 @@ export function drawPin(ctx: Ctx, x: number, y: number, lift: number, radius: nu
 	ctx.textAlign = 'left';
 }
 
-/** A trail that fades in 20 s. */
-export function drawTrail(
-	ctx: Ctx,
-	view: View,
-	trail: readonly TrailPoint[],
-	head: Placed,
-	nowMs: number,
-	ink: Ink
-): void {
-	if (trail.length === 0) return;
+/** Bands of age a trail fades in; each is one stroke for all robots, which keeps a large fleet cheap. */
+const TRAIL_BANDS = 6;
+
+export interface TrailToDraw {
+	readonly points: readonly TrailPoint[];
+	/** Where the robot is drawn now */
+	readonly head: Placed;
+}
+
+/** Trails that fade in 20 s. */
+export function drawTrails(ctx: Ctx, view: View, trails: readonly TrailToDraw[], nowMs: number, ink: Ink): void {
+	const bands = Array.from({ length: TRAIL_BANDS }, () => new Path2D());
+	for (const { points, head } of trails) {
+		points.forEach((from, i) => {
+			const to = points[i + 1] ?? head;
+			const band = bands[Math.floor(((nowMs - from.ms) / TRAIL_MS) * TRAIL_BANDS)];
+			band?.moveTo(screenX(view, from.x), screenY(view, from.y));
+			band?.lineTo(screenX(view, to.x), screenY(view, to.y));
+		});
+	}
 	ctx.strokeStyle = ink.ink;
 	ctx.lineWidth = 1.5;
-	for (let i = 0; i < trail.length; i++) {
-		const from = trail[i];
-		const to = trail[i + 1] ?? head;
-		if (!from) continue;
-		ctx.globalAlpha = 0.5 * Math.max(0, 1 - (nowMs - from.ms) / TRAIL_MS);
-		ctx.beginPath();
-		ctx.moveTo(screenX(view, from.x), screenY(view, from.y));
-		ctx.lineTo(screenX(view, to.x), screenY(view, to.y));
-		ctx.stroke();
-	}
+	bands.forEach((band, i) => {
+		ctx.globalAlpha = 0.5 * (1 - i / TRAIL_BANDS);
+		ctx.stroke(band);
+	});
 	ctx.globalAlpha = 1;
 }
 

@@ -47,10 +47,11 @@ export class Overlay {
 		const { scene } = this;
 		this.#spots = [];
 		drawZones(ctx, view, scene, ink, related.zone);
-		for (const { key } of scene.robots) {
-			const at = scene.robotMotion.at(key, nowMs);
-			if (at) drawTrail(ctx, view, scene.trails.of(key), at, nowMs, ink);
-		}
+		const trails = scene.robots.flatMap(({ key }) => {
+			const head = scene.robotMotion.at(key, nowMs);
+			return head ? [{ points: scene.trails.of(key), head }] : [];
+		});
+		drawTrails(ctx, view, trails, nowMs, ink);
 		this.#drawPeople(ctx, view, ink, nowMs);
 		const written = drawZoneNames(ctx, view, scene, ink, related.zone);
 		this.#drawRobots(ctx, view, ink, related, nowMs, written);

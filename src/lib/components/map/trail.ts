@@ -5,7 +5,7 @@ import { JUMP_M } from './motion.ts';
 /** ms until a trail has faded. */
 export const TRAIL_MS = 20_000;
 /** m between two points of a trail. */
-const STEP_M = 0.2;
+const STEP_M = 0.4;
 
 export interface TrailPoint {
 	readonly x: number;

@@ -52,7 +52,10 @@ const FREEZE: Readonly<Record<Verdict, Omit<Guidance, 'priority'>>> = {
 	packed: { what: 'is stuck in a packed crowd', action: 'Send someone to open a way. No robot could go on here now.' },
 	shared: { what: 'waits for people to make way', action: 'Send someone to ask people to let it pass.' },
 	open: { what: 'stands although there is room', action: 'Send someone to look at the robot.' },
-	unseen: { what: 'is stuck among people', action: 'Send someone to look: too little of the floor is seen to say more.' }
+	unseen: {
+		what: 'is stuck among people',
+		action: 'Send someone to look: too little of the floor is seen to say more.'
+	}
 };
 
 const RANK: Readonly<Record<Priority, number>> = { high: 2, medium: 1, low: 0 };

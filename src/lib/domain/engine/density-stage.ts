@@ -67,7 +67,13 @@ export function measureDensity(
 	const zones = model.zones.map((zone, index) => {
 		const was = previous.zones.find(({ key }) => key === zone.zone.key);
 		const result = measureZone(rule, zone, voronoi[index]!, points, was?.aboveThreshold ?? false);
-		const level = stepLevel(previous.levels.get(zone.zone.key) ?? NO_LEVEL, zone.zone.scheme, result.density, now, rule.level);
+		const level = stepLevel(
+			previous.levels.get(zone.zone.key) ?? NO_LEVEL,
+			zone.zone.scheme,
+			result.density,
+			now,
+			rule.level
+		);
 		levels.set(zone.zone.key, level);
 		return { ...result, level: level.level };
 	});

@@ -6,7 +6,13 @@ import type { OpenHalt } from './robot-view.ts';
 
 export type EngineEvent =
 	| { readonly type: 'halt_started'; readonly floor: string; readonly halt: OpenHalt }
-	| { readonly type: 'halt_changed'; readonly floor: string; readonly halt: OpenHalt; readonly was: HaltKind; readonly at: number }
+	| {
+			readonly type: 'halt_changed';
+			readonly floor: string;
+			readonly halt: OpenHalt;
+			readonly was: HaltKind;
+			readonly at: number;
+	  }
 	| {
 			readonly type: 'halt_ended';
 			readonly floor: string;
@@ -22,7 +28,12 @@ export type EngineEvent =
 			readonly at: number;
 	  }
 	| { readonly type: 'clock_stepped'; readonly robot: string; readonly offset: number; readonly at: number }
-	| { readonly type: 'minutes'; readonly floor: string; readonly density: readonly DensityMinute[]; readonly exposure: readonly ExposureMinute[] };
+	| {
+			readonly type: 'minutes';
+			readonly floor: string;
+			readonly density: readonly DensityMinute[];
+			readonly exposure: readonly ExposureMinute[];
+	  };
 
 /** One zone's density over one minute. */
 export interface DensityMinute {

@@ -51,7 +51,8 @@ const drive =
 type Seen = EngineEvent & { readonly seenAt: number };
 type Start = Extract<EngineEvent, { type: 'halt_started' }> & { readonly seenAt: number };
 
-const starts = (events: readonly Seen[]): Start[] => events.filter((event): event is Start => event.type === 'halt_started');
+const starts = (events: readonly Seen[]): Start[] =>
+	events.filter((event): event is Start => event.type === 'halt_started');
 
 describe('halts', () => {
 	/** A wall of people from side to side. */
@@ -75,13 +76,22 @@ describe('halts', () => {
 	});
 
 	it('a robot that could see next to nothing gets the verdict unseen, never open', () => {
-		const blind: Script = (t) =>
-			drive(7)(t).map((said) => (said.kind === 'people' ? { ...said, range: 1 } : said));
+		const blind: Script = (t) => drive(7)(t).map((said) => (said.kind === 'people' ? { ...said, range: 1 } : said));
 		expect(starts(run(blind, 20).events)[0]).toMatchObject({ halt: { verdict: 'unseen' } });
 	});
 
 	it('a robot on its way raises nothing', () => {
-		expect(starts(run(drive(19, crowd.map(([x, y]) => [x + 30, y] as const)), 17).events)).toEqual([]);
+		expect(
+			starts(
+				run(
+					drive(
+						19,
+						crowd.map(([x, y]) => [x + 30, y] as const)
+					),
+					17
+				).events
+			)
+		).toEqual([]);
 	});
 
 	it('ends when the robot gets on again', () => {
@@ -111,9 +121,7 @@ describe('halts', () => {
 		const script: Script = (t) =>
 			one(t).flatMap((said) =>
 				['t1', 't2', 't3'].map((robot, lane) =>
-					said.kind === 'listening'
-						? said
-						: { ...said, robot, ...(said.kind === 'pose' ? { y: 3 + 2 * lane } : {}) }
+					said.kind === 'listening' ? said : { ...said, robot, ...(said.kind === 'pose' ? { y: 3 + 2 * lane } : {}) }
 				)
 			);
 		const { events } = run(script, 20);
@@ -176,7 +184,8 @@ describe('people and density', () => {
 	});
 
 	it('forgets what was seen two seconds ago', () => {
-		const script: Script = (t) => (t < 2 ? [pose({ t: T0 + t, x: 10, y: 5 }), people({ t: T0 + t, persons: [[3, 3]] })] : []);
+		const script: Script = (t) =>
+			t < 2 ? [pose({ t: T0 + t, x: 10, y: 5 }), people({ t: T0 + t, persons: [[3, 3]] })] : [];
 		const { last, frames } = run(script, 6);
 		expect(frames[15]!.coverage).toBeGreaterThan(0.99);
 		expect(last.coverage).toBe(0);
@@ -230,11 +239,16 @@ describe('time and maps', () => {
 		const at = context();
 		const crowdNear = [[8, 5]] as const;
 		const { state: reached } = run(drive(7, crowdNear), 4, at);
-		const frozen = JSON.stringify([...reached.seenAt.slice(0, 50), ...reached.tracker.tracks.map(({ x, y }) => [x, y])]);
+		const frozen = JSON.stringify([
+			...reached.seenAt.slice(0, 50),
+			...reached.tracker.tracks.map(({ x, y }) => [x, y])
+		]);
 		const heard = drive(7, crowdNear)(4.1);
 		const once = stepFloor(at, reached, heard, T0 + 4.15);
 		const again = stepFloor(at, reached, heard, T0 + 4.15);
 		expect(again.frame).toEqual(once.frame);
-		expect(JSON.stringify([...reached.seenAt.slice(0, 50), ...reached.tracker.tracks.map(({ x, y }) => [x, y])])).toBe(frozen);
+		expect(JSON.stringify([...reached.seenAt.slice(0, 50), ...reached.tracker.tracks.map(({ x, y }) => [x, y])])).toBe(
+			frozen
+		);
 	});
 });

@@ -24,7 +24,16 @@ import { markSeen, nothingSeen, type SeenAt, type View } from './observed.ts';
 import type { Observation } from './observation.ts';
 import { latestPose, startRobotView, withMoment, type OpenHalt, type RobotView } from './robot-view.ts';
 import type { EngineRules } from './rules.ts';
-import { addDensity, addDrives, bandOf, closeMinutes, EMPTY_TALLY, stopClock, type Drive, type Tally } from './tally.ts';
+import {
+	addDensity,
+	addDrives,
+	bandOf,
+	closeMinutes,
+	EMPTY_TALLY,
+	stopClock,
+	type Drive,
+	type Tally
+} from './tally.ts';
 
 export interface FloorState {
 	/** s, time of the last step */
@@ -261,5 +270,16 @@ function frameOf(
 		});
 	}
 	const { zones, field, observedArea, coverage } = state.density;
-	return { floor: model.floor.key, time: now, robots, persons, zones, halts, observedArea, coverage, field, flexibility };
+	return {
+		floor: model.floor.key,
+		time: now,
+		robots,
+		persons,
+		zones,
+		halts,
+		observedArea,
+		coverage,
+		field,
+		flexibility
+	};
 }

@@ -2,7 +2,7 @@
 
 import type { Floor, Zone } from '../floor.ts';
 import { cellAreasWithin, createFloorGrid, type FloorGrid, type ZoneCells } from '../geometry/grid.ts';
-import { boundsOf, edgesOf, isInside } from '../geometry/polygon.ts';
+import { edgesOf, isInside } from '../geometry/polygon.ts';
 import { createWallIndex, type WallIndex } from '../geometry/walls.ts';
 
 export interface ZoneModel {
@@ -61,9 +61,3 @@ export function zoneAt(model: FloorModel, x: number, y: number): string | null {
 
 export const isPrivate = (model: FloorModel, x: number, y: number): boolean =>
 	model.privateZones.some((zone) => isInside(zone.polygon, x, y));
-
-/** Longest distance inside the floor's bounds, m. */
-export function floorDiagonal(floor: Floor): number {
-	const { minX, minY, maxX, maxY } = boundsOf(floor.walkable);
-	return Math.hypot(maxX - minX, maxY - minY);
-}

@@ -35,7 +35,8 @@ export interface PersonPoint {
 	readonly age: number;
 }
 
-export type Condition = 'working' | 'idle' | 'waiting' | 'paused' | 'charging' | 'manual' | 'halted' | 'fault' | 'silent';
+export type Condition =
+	'working' | 'idle' | 'waiting' | 'paused' | 'charging' | 'manual' | 'halted' | 'fault' | 'silent';
 
 export interface RobotPicture {
 	readonly view: RobotView;

@@ -85,8 +85,7 @@ export function sampleOf(floor: Floor, view: RobotView, now: number): RobotSampl
 		blockingError: blocking?.code ?? null,
 		link: view.link,
 		atWaitingPlace:
-			pose !== null &&
-			floor.waitingPlaces.some(({ x, y, radius }) => Math.hypot(pose.x - x, pose.y - y) <= radius),
+			pose !== null && floor.waitingPlaces.some(({ x, y, radius }) => Math.hypot(pose.x - x, pose.y - y) <= radius),
 		nearGoal: toGoal !== null && toGoal <= ARRIVED_M + view.robot.model.radius,
 		nearestPerson: moment?.nearestPerson ?? null,
 		roomAlone: moment?.roomAlone ?? null,
@@ -156,4 +155,3 @@ export function conditionOf(view: RobotView, sample: RobotSample): Condition {
 
 /** s without a pose after which a robot is drawn hollow, tasked or not. */
 const SILENT_LOOK_S = 3;
-

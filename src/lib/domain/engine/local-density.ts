@@ -36,7 +36,13 @@ export function computeLocalDensity(
 }
 
 /** Observed share of the walkable floor within `radius` of (x, y), 0…1; 0 when there is no floor. */
-export function computeObservedShare(model: FloorModel, observed: Uint8Array, x: number, y: number, radius: number): number {
+export function computeObservedShare(
+	model: FloorModel,
+	observed: Uint8Array,
+	x: number,
+	y: number,
+	radius: number
+): number {
 	const { seen, walkable } = discAreas(model, observed, x, y, radius);
 	return walkable > 0 ? seen / walkable : 0;
 }

@@ -36,7 +36,10 @@ it('puts a density on the lower bound of a band into that band, and an unmeasure
 });
 
 it('stops the clock at onset: seconds between onset and detection are not exposure', () => {
-	let tally = addDrives(EMPTY_TALLY, [1, 2, 3, 4, 5, 6, 7, 8].map((second) => drive(600 + second)));
+	let tally = addDrives(
+		EMPTY_TALLY,
+		[1, 2, 3, 4, 5, 6, 7, 8].map((second) => drive(600 + second))
+	);
 	tally = stopClock(tally, 'porter-01', 603, 'hall-a', '0.2-0.5');
 	const { exposure } = closeMinutes(tally, 600 + 60 + 15);
 	expect(exposure).toEqual([expect.objectContaining({ minute: 600, taskedS: 3, halts: 1 })]);

@@ -20,7 +20,8 @@ function run(ticks: readonly Observation[][]) {
 		events.push(...step.events);
 		frames = step.frames;
 	});
-	const robotsOn = (floor: string) => frames.find((frame) => frame.floor === floor)!.robots.map(({ view }) => view.robot.key);
+	const robotsOn = (floor: string) =>
+		frames.find((frame) => frame.floor === floor)!.robots.map(({ view }) => view.robot.key);
 	return { current, events, frames, robotsOn };
 }
 

@@ -107,7 +107,8 @@ function route(context: VenueContext, state: VenueState, observations: readonly 
 		const target = observation.kind === 'pose' ? context.floorOfMap.get(observation.map) : current;
 		if (target === undefined) {
 			if (observation.kind === 'pose') events.push(unknownMap(observation, observation.map));
-			else if (observation.kind !== 'people') waiting.set(robot, { ...waitingOf(waiting, robot), ...lastWord(observation) });
+			else if (observation.kind !== 'people')
+				waiting.set(robot, { ...waitingOf(waiting, robot), ...lastWord(observation) });
 			continue;
 		}
 		if (target !== current) {
