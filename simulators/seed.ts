@@ -37,6 +37,8 @@ export interface SeedOptions {
 	/** Password of all demo accounts; made up when not given and none is kept. */
 	readonly password: string | undefined;
 	readonly nowMs: number;
+	/** Whole past weeks of history */
+	readonly weeks: number;
 	readonly log: (line: string) => void;
 }
 
@@ -61,7 +63,10 @@ export async function seed(options: SeedOptions): Promise<{ emails: readonly str
 		writePasswords(passwordsFile, { ...known, ...credentials.passwords });
 		if (credentials.added > 0) log(`${credentials.added} new robot credentials, kept in ${passwordsFile}.`);
 		const password = await ensureAccounts(db, options);
-		const history = await seedHistory({ db, raw }, { venue: SALTMARSH.venue, venueId, fleet, seed: 1, nowMs });
+		const history = await seedHistory(
+			{ db, raw },
+			{ venue: SALTMARSH.venue, venueId, fleet, seed: 1, nowMs, weeks: options.weeks }
+		);
 		if (history) log(`${history.days} past days with ${history.halts} halts.`);
 		return { emails: ACCOUNTS.map(({ role }) => mailOf(role)), password };
 	} finally {
@@ -107,6 +112,7 @@ async function main(): Promise<void> {
 		signInFile: join(dirname(databasePath), 'demo-sign-in.json'),
 		password: process.env.DEMO_PASSWORD || undefined,
 		nowMs: Date.now(),
+		weeks: 8,
 		log: (line) => console.log(line)
 	});
 	console.log(`Seeded in ${((performance.now() - started) / 1000).toFixed(1)} s. Sign in as ${emails.join(', ')}`);

@@ -1,11 +1,10 @@
-/** Eight invented weeks before the demo, so that reports and alarm lists have something to say. Written once. */
+/** Invented weeks before the demo, so that reports and alarm lists have something to say. Written once. */
 
 import type { Kysely } from 'kysely';
 import type Sqlite from 'better-sqlite3';
 import { computeArea } from '../../src/lib/domain/geometry/polygon.ts';
 import { intersect } from '../../src/lib/domain/geometry/clipping.ts';
 import type { Database } from '../../src/lib/server/db/schema.ts';
-import { writeTransaction } from '../../src/lib/server/db/transaction.ts';
 import { readFloors, type StoredFloor } from '../../src/lib/server/repositories/floors.ts';
 import { createNavGrid, isInsideRing } from '../core/nav-grid.ts';
 import { createRandom, type Random } from '../core/random.ts';
@@ -15,7 +14,6 @@ import { generateDay, type HistoryFloor, type HistoryRobot, type HistoryZone } f
 import { NEW_SOFTWARE_WEEK } from './law.ts';
 import { createHistoryWriter } from './store.ts';
 
-const WEEKS = 8;
 const SETTING = 'demo_history';
 
 export interface HistorySummary {
@@ -34,11 +32,12 @@ export async function seedHistory(
 		venueId,
 		fleet,
 		seed,
-		nowMs
-	}: { venue: Venue; venueId: number; fleet: readonly FleetRobot[]; seed: number; nowMs: number }
+		nowMs,
+		weeks
+	}: { venue: Venue; venueId: number; fleet: readonly FleetRobot[]; seed: number; nowMs: number; weeks: number }
 ): Promise<HistorySummary | null> {
 	const progress = await readProgress(db, nowMs);
-	if (progress.weeksDone >= WEEKS) return null;
+	if (progress.weeksDone >= weeks) return null;
 	const random = createRandom(`history/${seed}`);
 	const floors = (await readFloors(db, [venue.key])).map((stored) =>
 		historyFloor(stored, random.fork(stored.floor.key))
@@ -48,9 +47,9 @@ export async function seedHistory(
 		await db.selectFrom('user').select('id').where('role', '=', 'operator').orderBy('id').execute()
 	).map(({ id }) => id);
 	const write = createHistoryWriter(raw, { venueId, venueKey: venue.key, operators });
-	const days = openDays(progress.anchorMs, WEEKS, venue.timeZone, random.fork('days'));
+	const days = openDays(progress.anchorMs, weeks, venue.timeZone, random.fork('days'));
 	let halts = 0;
-	for (let week = progress.weeksDone; week < WEEKS; week++) {
+	for (let week = progress.weeksDone; week < weeks; week++) {
 		const batch = days
 			.filter((day) => day.week === week)
 			.flatMap((day) =>
@@ -60,8 +59,7 @@ export async function seedHistory(
 					return { floor, day: generateDay(day, floor, own, week >= NEW_SOFTWARE_WEEK, stream) };
 				})
 			);
-		write(batch);
-		await saveProgress(db, { anchorMs: progress.anchorMs, weeksDone: week + 1 });
+		write(batch, SETTING, JSON.stringify({ ...progress, weeksDone: week + 1 } satisfies Progress));
 		halts += batch.reduce((sum, { day }) => sum + day.halts.length, 0);
 	}
 	return { days: days.length, halts };
@@ -75,17 +73,6 @@ interface Progress {
 async function readProgress(db: Kysely<Database>, nowMs: number): Promise<Progress> {
 	const row = await db.selectFrom('setting').select('value').where('key', '=', SETTING).executeTakeFirst();
 	return row ? (JSON.parse(row.value) as Progress) : { anchorMs: nowMs, weeksDone: 0 };
-}
-
-async function saveProgress(db: Kysely<Database>, progress: Progress): Promise<void> {
-	const value = JSON.stringify(progress);
-	await writeTransaction(db, (trx) =>
-		trx
-			.insertInto('setting')
-			.values({ key: SETTING, value })
-			.onConflict((conflict) => conflict.column('key').doUpdateSet({ value }))
-			.execute()
-	);
 }
 
 function historyFloor({ id, floor, zoneIds }: StoredFloor, random: Random): HistoryFloor {

@@ -95,8 +95,13 @@ export function createHistoryWriter(raw: Sqlite.Database, { venueId, venueKey, o
 		);
 	}
 
-	/** Several days in one transaction. */
-	return raw.transaction((days: readonly { floor: HistoryFloor; day: HistoryDay }[]) => {
+	const setting = raw.prepare(
+		'INSERT INTO setting (key, value) VALUES (?, ?) ON CONFLICT (key) DO UPDATE SET value = excluded.value'
+	);
+
+	/** Several days and the note of how far we are, in one transaction: a run that is cut short leaves no half week. */
+	return raw.transaction((days: readonly { floor: HistoryFloor; day: HistoryDay }[], key: string, progress: string) => {
+		setting.run(key, progress);
 		for (const { floor, day } of days) {
 			for (const row of day.density) {
 				density.run(floor.id, row.zone, row.minuteMs, row.mean, row.peak, row.coverage, row.observedAreaS, row.personS);
@@ -116,5 +121,5 @@ export function createHistoryWriter(raw: Sqlite.Database, { venueId, venueKey, o
 			}
 			for (const halt of day.halts) storeHalt(floor, halt);
 		}
-	});
+	}).immediate;
 }

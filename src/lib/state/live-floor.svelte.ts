@@ -1,5 +1,6 @@
 /** One floor as the live stream tells it. Owns the connection: it reconnects, wakes after sleep, and knows how old it is. */
 
+import { untrack } from 'svelte';
 import type { LiveAlarm, LiveDelta, LiveField, LiveFrame, LiveHealth } from '../contracts/live.ts';
 import { leastLag } from './lag.ts';
 import { mergeAlarm, mergeDelta } from './live-merge.ts';
@@ -86,7 +87,9 @@ export class LiveFloor {
 	/** Hears every frame from now on, starting with the present one; the returned function ends it. */
 	onFrame(listener: FrameListener): () => void {
 		this.#listeners.add(listener);
-		if (this.frame) listener(this.frame, Date.now());
+		// Who listens from an effect must not be run again by every frame.
+		const present = untrack(() => this.frame);
+		if (present) listener(present, Date.now());
 		return () => this.#listeners.delete(listener);
 	}
 

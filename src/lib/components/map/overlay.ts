@@ -7,7 +7,7 @@ import {
 	drawGoal,
 	drawPin,
 	drawRobot,
-	drawTrail,
+	drawTrails,
 	isCompact,
 	pinRadius,
 	reachPx

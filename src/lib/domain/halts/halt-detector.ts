@@ -1,5 +1,6 @@
 /** Is a robot halted, since when, and of what kind? One state per robot; pure: the caller brings the clock and the data. */
 
+import type { Point } from '../geometry/types.ts';
 import type { HaltRule } from './halt-rule.ts';
 import {
 	bestProgress,
@@ -84,8 +85,10 @@ export interface HaltState {
 	readonly kindBeneath: Exclude<HaltKind, 'silent'> | null;
 	/** When a fault or a silence was last the case, s; only what is driven afterwards ends the halt. */
 	readonly troubleAt: number;
-	/** m of progress a dither must get beyond before it counts as getting on. */
+	/** m of progress a robot that stopped must get beyond before it counts as getting on; null after a fault or a silence. */
 	readonly farthest: number | null;
+	/** Where it stood when the halt was noticed; null for a dither, which has no such place. */
+	readonly place: Point | null;
 }
 
 /** s of history beyond what the rule needs, so that an onset in slow traffic is still inside. */
@@ -106,7 +109,8 @@ export function startHaltState(): HaltState {
 		people: [],
 		kindBeneath: null,
 		troubleAt: -Infinity,
-		farthest: null
+		farthest: null,
+		place: null
 	};
 }
 
@@ -178,16 +182,18 @@ function open(
 	kindBeneath: HaltState['kindBeneath'],
 	detectedAt: number
 ): Step {
-	const farthest = kind === 'dither' && state.track ? bestProgress(state.track) : null;
+	const stopped = kind !== 'fault' && kind !== 'silent' ? state.track : null;
+	const farthest = stopped && bestProgress(stopped);
+	const place = stopped && kind !== 'dither' ? newest(stopped) : null;
 	const event = { type: 'started', kind, onset, detectedAt } as const;
 	const troubleAt = kind === 'fault' || kind === 'silent' ? detectedAt : -Infinity;
-	return { state: { ...state, open: { kind, onset, detectedAt }, kindBeneath, troubleAt, farthest }, event };
+	return { state: { ...state, open: { kind, onset, detectedAt }, kindBeneath, troubleAt, farthest, place }, event };
 }
 
 function close(state: HaltState, reason: HaltEnd, at: number): Step {
 	// The next halt must not be dated back into this one.
 	const track = state.track && startTrack(newest(state.track), state.track.remaining);
-	const next = { ...state, open: null, kindBeneath: null, farthest: null, belowSince: null, track };
+	const next = { ...state, open: null, kindBeneath: null, farthest: null, place: null, belowSince: null, track };
 	return { state: next, event: { type: 'ended', at, reason } };
 }
 
@@ -261,12 +267,17 @@ function peopleBefore(people: HaltState['people'], onset: number, rule: HaltRule
 	return people.find((seen) => seen.time > onset)?.near ?? false;
 }
 
-function getsOn({ track, troubleAt, farthest }: HaltState, rule: HaltRule): boolean {
+/** m from where it stopped at which a robot has found another way; farther than one that backs off to try again goes. */
+const LEFT_PLACE_M = 3;
+
+/** Backing off and coming back to the same people gains metres too, so a stop ends beyond the farthest point, or elsewhere. */
+function getsOn({ track, troubleAt, farthest, place }: HaltState, rule: HaltRule): boolean {
 	if (!track) return false;
 	const now = newest(track);
 	const gained = progressWithin(track, Math.min(rule.endWindowS, now.time - troubleAt));
 	if (gained < rule.endProgressM - 1e-9) return false;
-	return farthest === null || now.progress >= farthest + rule.minProgressM;
+	if (farthest === null || now.progress >= farthest + rule.minProgressM) return true;
+	return place !== null && Math.hypot(now.x - place.x, now.y - place.y) >= LEFT_PLACE_M;
 }
 
 /** Why standing still is all right now; null when the robot should be getting on. */

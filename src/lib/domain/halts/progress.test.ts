@@ -17,7 +17,29 @@ it('measures the rest of the route from the nearest point on it', () => {
 
 it('counts the way to the route and from its end to the goal', () => {
 	expect(remainingAlong(route, { x: 10, y: 9 }, -2, 0)).toBeCloseTo(21);
-	expect(remainingAlong(route, { x: 10, y: 5 }, 4, 1)).toBeCloseTo(12);
+	// 1 m beside the route: to the point 1.5 m on, and the 9.5 m from there.
+	expect(remainingAlong(route, { x: 10, y: 5 }, 4, 1)).toBeCloseTo(Math.hypot(1.5, 1) + 9.5);
+	expect(remainingAlong(route, { x: 10, y: 5 }, 11, 4)).toBeCloseTo(Math.hypot(1, 1));
+});
+
+it('trap: a robot that swerves round somebody gets on, though it leaves its route', () => {
+	const straight = [
+		{ x: 0, y: 0 },
+		{ x: 20, y: 0 }
+	];
+	const before = remainingAlong(straight, straight[1]!, 5, 0);
+	const beside = remainingAlong(straight, straight[1]!, 5.9, 0.9);
+	expect(before - beside).toBeGreaterThan(0.6);
+});
+
+it('never grows while a robot follows its route, corners included', () => {
+	fc.assert(
+		fc.property(fc.double({ min: 0, max: 14.9, noNaN: true }), (s) => {
+			const at = (t: number) => (t <= 10 ? { x: t, y: 0 } : { x: 10, y: t - 10 });
+			const rest = ({ x, y }: { x: number; y: number }) => remainingAlong(route, route[2]!, x, y);
+			expect(rest(at(s + 0.1))).toBeLessThanOrEqual(rest(at(s)) + 1e-9);
+		})
+	);
 });
 
 it('is the straight distance without a usable route', () => {

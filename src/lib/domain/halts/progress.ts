@@ -155,32 +155,57 @@ export const bestProgress = (track: ProgressTrack): number =>
 
 export const newest = (track: ProgressTrack): ProgressPoint => track.points[track.points.length - 1]!;
 
+/** m along the route: who drives beside it, round somebody, gets on as long as this point comes nearer (chosen by us). */
+const AIM_AHEAD_M = 1.5;
+
 /**
- * Way still to go in m: from (x, y) to the nearest point of the route, along it, and from its end to the goal.
- * With fewer than two route points, the straight distance to the goal.
+ * Way still to go in m: from (x, y) straight to the point of the route AIM_AHEAD_M beyond the nearest one, along the rest of
+ * it, and from its end to the goal. On a straight route that is its rest; beside it, swerving costs little, as it does
+ * a robot. With fewer than two route points, the straight distance to the goal.
  */
 export function remainingAlong(route: readonly Point[], goal: Point, x: number, y: number): number {
 	const end = route[route.length - 1];
 	if (route.length < 2 || !end) return Math.hypot(goal.x - x, goal.y - y);
-	let nearest = Infinity;
-	let rest = 0;
-	let tail = Math.hypot(goal.x - end.x, goal.y - end.y);
+	const near = nearestOn(route, x, y);
+	let ahead = AIM_AHEAD_M;
+	let aim = near.point;
+	let leg = near.leg;
+	for (; leg < route.length; leg++) {
+		const to = route[leg]!;
+		const length = Math.hypot(to.x - aim.x, to.y - aim.y);
+		if (length > ahead) {
+			aim = { x: aim.x + ((to.x - aim.x) * ahead) / length, y: aim.y + ((to.y - aim.y) * ahead) / length };
+			break;
+		}
+		ahead -= length;
+		aim = to;
+	}
+	let rest = Math.hypot(aim.x - x, aim.y - y) + Math.hypot(goal.x - end.x, goal.y - end.y);
+	for (let from = aim; leg < route.length; from = route[leg++]!) {
+		rest += Math.hypot(route[leg]!.x - from.x, route[leg]!.y - from.y);
+	}
+	return rest;
+}
+
+/** Point of the route nearest to (x, y), the later one of equals, and the index of the route point that comes next. */
+function nearestOn(route: readonly Point[], x: number, y: number): { point: Point; leg: number } {
+	let least = Infinity;
+	let found = { point: route[0]!, leg: 1 };
 	for (let i = route.length - 1; i > 0; i--) {
 		const a = route[i - 1]!;
 		const b = route[i]!;
 		const ex = b.x - a.x;
 		const ey = b.y - a.y;
-		const length = Math.hypot(ex, ey);
-		const along = length > 0 ? ((x - a.x) * ex + (y - a.y) * ey) / (length * length) : 0;
-		const share = Math.min(1, Math.max(0, along));
-		const aside = Math.hypot(a.x + share * ex - x, a.y + share * ey - y);
-		if (aside < nearest) {
-			nearest = aside;
-			rest = (1 - share) * length + tail;
+		const length2 = ex * ex + ey * ey;
+		const share = length2 > 0 ? Math.min(1, Math.max(0, ((x - a.x) * ex + (y - a.y) * ey) / length2)) : 0;
+		const point = { x: a.x + share * ex, y: a.y + share * ey };
+		const aside = Math.hypot(point.x - x, point.y - y);
+		if (aside < least) {
+			least = aside;
+			found = { point, leg: i };
 		}
-		tail += length;
 	}
-	return nearest + rest;
+	return found;
 }
 
 /**
