@@ -1,4 +1,4 @@
-import { describe, expect, it } from 'vitest';
+import { describe, expect, it, vi } from 'vitest';
 import { CHANNELS } from '../src/lib/contracts/mqtt.ts';
 import { isInsideRing } from './core/nav-grid.ts';
 import { scenarioOf, type ScenarioName } from './scenarios.ts';
@@ -14,6 +14,9 @@ function run(world: World, seconds: number): Delivery[] {
 	for (let i = 0; i < seconds * 10; i++) all.push(...world.step(0.1));
 	return all;
 }
+
+// Whole runs, on a machine that may be busy.
+vi.setConfig({ testTimeout: 60_000 });
 
 describe('World', () => {
 	it('sends only messages of the contract', () => {

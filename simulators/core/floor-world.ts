@@ -18,15 +18,16 @@ export class FloorWorld {
 	readonly life: Life;
 	readonly walking: Walking;
 	readonly driveGrid: NavGrid;
-	readonly #fields = new Map<string, DistanceField>();
+	readonly #fields: Map<string, DistanceField>;
 
 	constructor(
 		readonly model: VenueFloor,
 		random: Random,
 		options: LifeOptions
 	) {
-		const walkGrid = createNavGrid(model.floor, WALK_CLEARANCE);
-		this.driveGrid = createNavGrid(model.floor, DRIVE_CLEARANCE);
+		const walkGrid = gridOf(model, WALK_CLEARANCE);
+		this.driveGrid = gridOf(model, DRIVE_CLEARANCE);
+		this.#fields = fieldsOf(this.driveGrid);
 		this.people = new Population(walkGrid.walls.bounds, Math.max(64, options.peak * 2));
 		this.walking = new Walking(this.people, walkGrid, random.fork('walking'));
 		this.life = new Life(this.people, walkGrid, model.places, random.fork('life'), options);
@@ -78,6 +79,24 @@ export class FloorWorld {
 		}
 		return points / 16;
 	}
+}
+
+/** Grids and fields follow from the drawing alone, so every world of one process shares them. */
+const grids = new WeakMap<VenueFloor, Map<number, NavGrid>>();
+const fields = new WeakMap<NavGrid, Map<string, DistanceField>>();
+
+function gridOf(model: VenueFloor, clearance: number): NavGrid {
+	const known = grids.get(model) ?? new Map<number, NavGrid>();
+	grids.set(model, known);
+	const grid = known.get(clearance) ?? createNavGrid(model.floor, clearance);
+	known.set(clearance, grid);
+	return grid;
+}
+
+function fieldsOf(grid: NavGrid): Map<string, DistanceField> {
+	const known = fields.get(grid) ?? new Map<string, DistanceField>();
+	fields.set(grid, known);
+	return known;
 }
 
 /** Turns floor coordinates into a robot's own map: the inverse of the map's similarity, ready for many points. */

@@ -2,7 +2,7 @@
 
 import FlatQueue from 'flatqueue';
 import type { Floor } from '../../src/lib/domain/floor.ts';
-import type { Point, Ring } from '../../src/lib/domain/geometry/types.ts';
+import type { Point, Polygon, Ring } from '../../src/lib/domain/geometry/types.ts';
 import { createWallGrid, wallsOf, type WallGrid } from './wall-grid.ts';
 
 export interface NavGrid {
@@ -34,12 +34,12 @@ export function createNavGrid(floor: Pick<Floor, 'walkable' | 'walls'>, clearanc
 	const rows = Math.ceil((maxY - minY) / cell);
 	const free = new Uint8Array(cols * rows);
 	const cost = new Float32Array(cols * rows);
+	const inside = rasterise(floor.walkable, minX, minY, cell, cols, rows);
 	for (let i = 0; i < free.length; i++) {
 		const x = minX + ((i % cols) + 0.5) * cell;
 		const y = minY + (Math.floor(i / cols) + 0.5) * cell;
 		const gap = walls.distance(x, y);
-		const inside = isInsideRing(floor.walkable.outer, x, y) && !floor.walkable.holes.some((h) => isInsideRing(h, x, y));
-		free[i] = inside && gap >= clearance ? 1 : 0;
+		free[i] = inside[i] && gap >= clearance ? 1 : 0;
 		cost[i] = 1 + Math.max(0, 0.9 - Math.min(gap, 1.5)) * 0.8;
 	}
 	const index = (x: number, y: number) => {
@@ -56,6 +56,23 @@ export function createNavGrid(floor: Pick<Floor, 'walkable' | 'walls'>, clearanc
 		return true;
 	}
 	return { x0: minX, y0: minY, cell, cols, rows, free, cost, walls, index, isOpen };
+}
+
+/** 1 for every cell whose centre lies inside the outline and in no hole. */
+function rasterise(area: Polygon, x0: number, y0: number, cell: number, cols: number, rows: number): Uint8Array {
+	const mask = new Uint8Array(cols * rows);
+	for (const [ring, value] of [[area.outer, 1] as const, ...area.holes.map((hole) => [hole, 0] as const)]) {
+		const xs = ring.map(([x]) => x);
+		const ys = ring.map(([, y]) => y);
+		const lastRow = Math.min(rows - 1, Math.floor((Math.max(...ys) - y0) / cell));
+		const lastCol = Math.min(cols - 1, Math.floor((Math.max(...xs) - x0) / cell));
+		for (let row = Math.max(0, Math.floor((Math.min(...ys) - y0) / cell)); row <= lastRow; row++) {
+			for (let col = Math.max(0, Math.floor((Math.min(...xs) - x0) / cell)); col <= lastCol; col++) {
+				if (isInsideRing(ring, x0 + (col + 0.5) * cell, y0 + (row + 0.5) * cell)) mask[row * cols + col] = value;
+			}
+		}
+	}
+	return mask;
 }
 
 /** The free cell nearest to a point, as a point at its centre; null when there is none within 3 m. */
@@ -78,6 +95,9 @@ export function nearestFree(grid: NavGrid, x: number, y: number): Point | null {
 	return best;
 }
 
+/** Cells round a single goal whose distance is taken as the crow flies. */
+const EXACT_CELLS = 6;
+
 /**
  * Distance field by fast marching (Sethian 1996, *A fast marching level set method for monotonically advancing fronts*;
  * from memory): first-order upwind solution of |∇u| = cost, so walkers do not zigzag along the grid's eight directions.
@@ -87,19 +107,44 @@ export function computeDistanceField(grid: NavGrid, sources: readonly Point[]): 
 	const field = new Float32Array(cols * rows).fill(Infinity);
 	const settled = new Uint8Array(cols * rows);
 	const queue = new FlatQueue<number>();
+	// A region is its cells; a single goal starts with exact distances round it, where the scheme is at its worst.
 	for (const source of sources) {
 		const open = nearestFree(grid, source.x, source.y);
-		const at = open ? grid.index(open.x, open.y) : -1;
-		if (at < 0 || field[at] === 0) continue;
-		field[at] = 0;
-		queue.push(at, 0);
+		if (!open) continue;
+		const reach = sources.length === 1 ? EXACT_CELLS : 0;
+		const col = Math.floor((open.x - grid.x0) / cell);
+		const row = Math.floor((open.y - grid.y0) / cell);
+		for (let r = Math.max(0, row - reach); r <= Math.min(rows - 1, row + reach); r++) {
+			for (let c = Math.max(0, col - reach); c <= Math.min(cols - 1, col + reach); c++) {
+				const at = r * cols + c;
+				const x = grid.x0 + (c + 0.5) * cell;
+				const y = grid.y0 + (r + 0.5) * cell;
+				if (!free[at] || (reach > 0 && !grid.isOpen(open.x, open.y, x, y))) continue;
+				const away = reach > 0 ? Math.hypot(x - open.x, y - open.y) : 0;
+				if (away >= field[at]!) continue;
+				field[at] = away;
+				queue.push(at, away);
+			}
+		}
 	}
 	const known = (i: number) => (settled[i] ? field[i]! : Infinity);
 	for (let at = queue.pop(); at !== undefined; at = queue.pop()) {
 		if (settled[at]) continue;
 		settled[at] = 1;
 		const col = at % cols;
-		for (const next of [col > 0 ? at - 1 : -1, col < cols - 1 ? at + 1 : -1, at - cols, at + cols]) {
+		for (let side = 0; side < 4; side++) {
+			const next =
+				side === 0
+					? col > 0
+						? at - 1
+						: -1
+					: side === 1
+						? col < cols - 1
+							? at + 1
+							: -1
+						: side === 2
+							? at - cols
+							: at + cols;
 			if (next < 0 || next >= cols * rows || settled[next] || !free[next]) continue;
 			const c = next % cols;
 			const a = Math.min(c > 0 ? known(next - 1) : Infinity, c < cols - 1 ? known(next + 1) : Infinity);

@@ -1,4 +1,4 @@
-import { describe, expect, it } from 'vitest';
+import { describe, expect, it, vi } from 'vitest';
 import { speedOfDensity as weidmannSpeed } from '../../src/lib/domain/density/fundamental-diagram.ts';
 import { measureCorridor } from './corridor.ts';
 import { createNavGrid, isInsideRing } from '../core/nav-grid.ts';
@@ -6,6 +6,9 @@ import { createRandom } from '../core/random.ts';
 import { SMALL_FLOOR } from '../../tests/support/fleet-venue.ts';
 import { Population, WALKING } from './population.ts';
 import { Walking } from './walking.ts';
+
+// Whole runs, on a machine that may be busy.
+vi.setConfig({ testTimeout: 60_000 });
 
 describe('speed and density in a corridor', () => {
 	// Weidmann 1993 (METHODS: 1.34, 1.913, 5.4). Band chosen by us: his own data scatter by more than ±0.15 m/s.

@@ -46,7 +46,7 @@ export function createHistoryWriter(raw: Sqlite.Database, { venueId, venueKey, o
 			floor.id,
 			zone.id,
 			`${zone.name}, ${floor.name}`,
-			`${robot.mark} ${what}`,
+			what,
 			action,
 			place.x,
 			place.y,

@@ -67,7 +67,7 @@ export function peopleMessage(
 							vy: speedOf(frame.dy(person.vx, person.vy), view.pace)
 						}
 					: {}),
-				sd: mm(person.sd)
+				sd: Math.max(0.001, mm(person.sd))
 			};
 		})
 	};

@@ -9,7 +9,7 @@ export interface SensorSettings {
 	readonly range: number;
 	/** rad, full width centred on the heading; null all round */
 	readonly fieldOfView: number | null;
-	/** m, at the robot; grows by 1 cm per metre of distance */
+	/** m, standard deviation at the robot; grows by a quarter of itself per metre of distance */
 	readonly noise: number;
 	/** m/s, of each velocity component; null when the robot sends no velocities */
 	readonly velocityNoise: number | null;
@@ -99,7 +99,7 @@ export class Sensor {
 			}
 			if (random.chance(idSwitch * elapsed)) track.id = this.#nextId++;
 			track.seenAt = time;
-			const sd = noise + 0.01 * distance;
+			const sd = noise * (1 + 0.25 * distance);
 			seen.push({
 				id: String(track.id),
 				x: x + Math.cos(bearing) * distance + random.normal(0, sd),

@@ -1,4 +1,4 @@
-import { describe, expect, it } from 'vitest';
+import { describe, expect, it, vi } from 'vitest';
 import type { Command } from '../../src/lib/contracts/mqtt.ts';
 import { CALM, SMALL_VENUE, smallFleet } from '../../tests/support/fleet-venue.ts';
 import { createRandom } from '../core/random.ts';
@@ -29,6 +29,8 @@ const goal = { key: 'east', x: 27, y: 6 };
 const run = (world: World, seconds: number) => {
 	for (let i = 0; i < seconds * 10; i++) world.step(0.1);
 };
+
+vi.setConfig({ testTimeout: 60_000 });
 
 describe('driving', () => {
 	it('gets through the door to its goal on empty floor, at about its own speed', () => {
@@ -127,7 +129,7 @@ describe('yielding', () => {
 		vehicle.place(23, 6, 0);
 		for (let k = 0; k < 9; k++) {
 			const angle = (2 * Math.PI * k) / 9;
-			floor.life.place(23 + 1.1 * Math.cos(angle), 6 + 1.1 * Math.sin(angle), Infinity);
+			floor.life.place(23 + 0.8 * Math.cos(angle), 6 + 0.8 * Math.sin(angle), Infinity);
 		}
 		vehicle.assign(goal, 0, 0);
 		run(world, 8);

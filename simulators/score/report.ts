@@ -116,15 +116,18 @@ function floorFigures({ density, persons, clockErrors }: Evidence): Scoreboard {
 	);
 	return {
 		density_bias: rounded(high.bias),
+		density_bias_on_seen: rounded(high.biasOnSeen),
+		density_bias_classic: rounded(high.biasClassic),
 		density_rmse_per_m2: rounded(high.rmse),
 		...Object.assign(
 			{},
 			...COVERAGE_BANDS.map((from, index) => {
-				const { results, bias, rmse } = density.figures(index, index + 1);
+				const { results, bias, biasOnSeen, rmse } = density.figures(index, index + 1);
 				const band = `${from * 100}_${(COVERAGE_BANDS[index + 1] ?? 1) * 100}`;
 				return {
 					[`density_results_${band}`]: results,
 					[`density_bias_${band}`]: rounded(bias),
+					[`density_bias_on_seen_${band}`]: rounded(biasOnSeen),
 					[`density_rmse_${band}_per_m2`]: rounded(rmse)
 				};
 			})

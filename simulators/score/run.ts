@@ -149,7 +149,7 @@ function compareFloors(
 		if (measured.time !== now) continue;
 		fresh = true;
 		const floor = context.floors.get(model.floor.key)!.model;
-		density.add(floor, measured.zones, people);
+		density.add(floor, measured.zones, measured.observed, people);
 		persons.add(floor, measured.observed, measured.points, people, matched);
 	}
 	return fresh;

@@ -25,6 +25,12 @@ interface Span {
 	to: number;
 }
 
+/** The last few seconds of one robot on one task. */
+interface Trail {
+	readonly task: string;
+	readonly samples: { readonly time: number; readonly remaining: number }[];
+}
+
 export class TrueHalts {
 	readonly #noted: Noted[] = [];
 	/** Faults that came on top of a halt, which the simulation does not note apart. */
@@ -32,6 +38,10 @@ export class TrueHalts {
 	readonly #openFault = new Map<string, TrueHalt>();
 	/** Times without radio */
 	readonly #quiet: Span[] = [];
+	/** Times at which a robot truly got on as much as ends a halt by the desk's definition */
+	readonly #going: Span[] = [];
+	readonly #lastGoing = new Map<string, Span>();
+	readonly #trails = new Map<string, Trail>();
 
 	constructor(
 		readonly world: World,
@@ -51,6 +61,7 @@ export class TrueHalts {
 		for (const agent of agents) {
 			this.#watchRadio(agent, time);
 			this.#watchFault(agent, time);
+			this.#watchProgress(agent, time);
 		}
 	}
 
@@ -60,13 +71,25 @@ export class TrueHalts {
 			...this.#noted,
 			...this.#faults.map((truth): Noted => ({ truth, verdict: null, planned: false }))
 		].sort((a, b) => a.truth.onset - b.truth.onset);
-		const counted: Noted[] = [];
+		const incidents = new Map<string, Pick<TrueHalt, 'end' | 'endedBy'>>();
 		return all.map((noted) => {
-			const { robot, kind, cause, onset, end } = noted.truth;
-			const counts = this.#isNoticeable(noted) && !counted.some((earlier) => isWithin(noted.truth, earlier.truth));
-			if (counts) counted.push(noted);
+			const { robot, kind, cause, onset, end, endedBy } = noted.truth;
+			const open = incidents.get(robot);
+			const goesOn = open !== undefined && this.#goesOn(robot, open, onset);
+			const counts = !goesOn && this.#isNoticeable(noted);
+			if (counts) incidents.set(robot, { end, endedBy });
+			if (goesOn && open.end !== null && (end ?? Infinity) > open.end) incidents.set(robot, { end, endedBy });
 			return { robot, kind, cause, onset, end, verdict: noted.verdict, counts };
 		});
+	}
+
+	/** Whether a halt that begins at `onset` is still the incident before: it lasts, or the robot has not got on since. */
+	#goesOn(robot: string, { end, endedBy }: Pick<TrueHalt, 'end' | 'endedBy'>, onset: number): boolean {
+		if (end === null || onset <= end) return true;
+		return (
+			endedBy === 'progress' &&
+			!this.#going.some((span) => span.robot === robot && span.from <= onset && span.to >= end)
+		);
 	}
 
 	#isNoticeable({ truth, planned }: Noted): boolean {
@@ -96,6 +119,28 @@ export class TrueHalts {
 		if (radio && open) last.to = time;
 	}
 
+	#watchProgress({ vehicle }: Agent, time: number): void {
+		const robot = vehicle.robot.key;
+		const remaining = vehicle.remaining();
+		if (!vehicle.task || remaining === null) {
+			this.#trails.delete(robot);
+			return;
+		}
+		let trail = this.#trails.get(robot);
+		if (trail?.task !== vehicle.task.id) this.#trails.set(robot, (trail = { task: vehicle.task.id, samples: [] }));
+		const { samples } = trail;
+		samples.push({ time, remaining });
+		if (time - samples[0]!.time > this.rule.endWindowS + 1e-6) samples.shift();
+		if (samples[0]!.remaining - remaining < this.rule.endProgressM) return;
+		const last = this.#lastGoing.get(robot);
+		if (last && time - last.to < 2 * SAME_TIME_S) last.to = time;
+		else {
+			const span = { robot, from: time, to: time };
+			this.#going.push(span);
+			this.#lastGoing.set(robot, span);
+		}
+	}
+
 	#watchFault({ vehicle }: Agent, time: number): void {
 		const robot = vehicle.robot.key;
 		const cause = vehicle.faultNow(time);
@@ -117,7 +162,3 @@ export class TrueHalts {
 		if (!known) this.#faults.push(fault);
 	}
 }
-
-/** Begins while the earlier one of the same robot lasts: the desk goes on with the incident it has. */
-const isWithin = (halt: TrueHalt, earlier: TrueHalt): boolean =>
-	halt !== earlier && halt.robot === earlier.robot && halt.onset <= (earlier.end ?? Infinity);

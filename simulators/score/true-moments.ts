@@ -59,7 +59,7 @@ export class TrueMoments {
 		this.#pictures.push({
 			time: world.time,
 			robots: new Map(world.agents.map((agent) => [agent.vehicle.robot.key, robotNow(agent)])),
-			people: world.floors.map(peopleNow)
+			people: world.floors.map((floor) => peopleNow(floor, this.rules.room.personRadiusM))
 		});
 		if (world.time - this.#pictures[0]!.time > KEPT_S) this.#pictures.shift();
 	}
@@ -103,7 +103,7 @@ function robotNow({ vehicle }: Agent): RobotThen {
 	return { x, y, floor, route: task?.route ?? null, goal: task?.goal ?? null };
 }
 
-function peopleNow({ people }: FloorWorld): RoomPerson[] {
+function peopleNow({ people }: FloorWorld, radius: number): RoomPerson[] {
 	const all: RoomPerson[] = [];
 	for (let i = 0; i < people.end; i++) {
 		if (!people.alive[i]) continue;
@@ -113,7 +113,7 @@ function peopleNow({ people }: FloorWorld): RoomPerson[] {
 			y: people.y[i]!,
 			vx: people.vx[i]!,
 			vy: people.vy[i]!,
-			radius: people.radius[i]!,
+			radius,
 			flexibility: yields ? STEP_ASIDE : 0
 		});
 	}

@@ -3,11 +3,17 @@ import type { LiveAlarm } from '../../contracts/live.ts';
 import { announceAlarms } from './announce.ts';
 
 const alarm = (priority: string) =>
-	({ priority, place: 'Food court', what: 'P3 stopped', action: 'Send someone.' }) as LiveAlarm;
+	({
+		priority,
+		place: 'Food court',
+		robots: ['porter-03'],
+		what: 'stuck',
+		action: 'Send someone.'
+	}) as Partial<LiveAlarm> as LiveAlarm;
 
 it('reads a single alarm in full: place, robot, what to do', () => {
 	expect(announceAlarms([alarm('medium')])).toEqual({
-		words: 'New medium alarm. Food court: P3 stopped. Send someone.',
+		words: 'New medium alarm. Food court: porter-03 stuck. Send someone.',
 		urgent: false
 	});
 });

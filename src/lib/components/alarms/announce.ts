@@ -15,6 +15,9 @@ export function announceAlarms(fresh: readonly LiveAlarm[]): Announcement | null
 	if (!first) return null;
 	const high = fresh.filter(({ priority }) => priority === 'high').length;
 	if (fresh.length === 1)
-		return { words: `New ${first.priority} alarm. ${first.place}: ${first.what}. ${first.action}`, urgent: high > 0 };
+		return {
+			words: `New ${first.priority} alarm. ${first.place}: ${[...first.robots, first.what].join(' ')}. ${first.action}`,
+			urgent: high > 0
+		};
 	return { words: `${counted(fresh.length, 'new alarm')}${high ? `, ${high} high` : ''}.`, urgent: high > 0 };
 }

@@ -7,7 +7,7 @@ export type Priority = 'high' | 'medium' | 'low';
 
 export interface Guidance {
 	readonly priority: Priority;
-	/** What happened, without the place and the robot */
+	/** What happened, in words that go after the marks of one robot or several; without the place */
 	readonly what: string;
 	/** What the operator does now */
 	readonly action: string;
@@ -22,25 +22,25 @@ export function guidanceFor(kind: HaltKind, verdict: Verdict): Guidance {
 		case 'fault':
 			return {
 				priority: 'high',
-				what: 'reports a fault and stands',
+				what: 'fault reported, standing',
 				action: 'Send someone to the robot. Read its errors before anything else.'
 			};
 		case 'silent':
 			return {
 				priority: 'medium',
-				what: 'is silent',
+				what: 'silent, nothing heard from it',
 				action: 'Send someone to the last place. Check the radio coverage there.'
 			};
 		case 'dither':
 			return {
 				priority: 'low',
-				what: 'drives without getting on',
+				what: 'driving without getting on',
 				action: 'Watch it. Ask it to pause and send someone if it is in people’s way.'
 			};
 		case 'stall':
 			return {
 				priority: 'medium',
-				what: 'stands with nobody in the way',
+				what: 'standing with nobody in the way',
 				action: 'Send someone to see what holds it.'
 			};
 		case 'freeze':
@@ -49,11 +49,11 @@ export function guidanceFor(kind: HaltKind, verdict: Verdict): Guidance {
 }
 
 const FREEZE: Readonly<Record<Verdict, Omit<Guidance, 'priority'>>> = {
-	packed: { what: 'is stuck in a packed crowd', action: 'Send someone to open a way. No robot could go on here now.' },
-	shared: { what: 'waits for people to make way', action: 'Send someone to ask people to let it pass.' },
-	open: { what: 'stands although there is room', action: 'Send someone to look at the robot.' },
+	packed: { what: 'stuck in a packed crowd', action: 'Send someone to open a way. No robot could go on here now.' },
+	shared: { what: 'waiting for people to make way', action: 'Send someone to ask people to let it pass.' },
+	open: { what: 'standing although there is room', action: 'Send someone to look at the robot.' },
 	unseen: {
-		what: 'is stuck among people',
+		what: 'stuck among people',
 		action: 'Send someone to look: too little of the floor is seen to say more.'
 	}
 };

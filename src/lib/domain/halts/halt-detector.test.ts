@@ -190,6 +190,30 @@ describe('kinds', () => {
 		expect((events[1] as { at: number }).at).toBeGreaterThan(41);
 	});
 
+	it('trap: backing off and coming back to the same people is not getting on', () => {
+		const rocking = (time: number) => {
+			const back = Math.min(Math.max(0, time - 40) * 0.4, 1) - Math.min(Math.max(0, time - 43) * 0.5, 1);
+			return { at: { x: Math.min(time, 20) - back + 0.8 * Math.max(0, time - 60), y: 0 }, nearestPerson: 1 };
+		};
+		const { events } = run(70, rocking);
+		expect(events).toMatchObject([
+			{ type: 'started', kind: 'freeze' },
+			{ type: 'ended', reason: 'progress' }
+		]);
+		expect((events[1] as { at: number }).at).toBeGreaterThan(60);
+	});
+
+	it('ends elsewhere too: a robot that turned back and drives another way has got on', () => {
+		const detour = (time: number) => {
+			const back = Math.min(Math.max(0, time - 40), 4);
+			const on = Math.max(0, time - 44);
+			return { at: { x: Math.min(time, 20) - back + on, y: Math.min(on, 3) }, nearestPerson: 1 };
+		};
+		const { events } = run(60, detour);
+		expect(events).toMatchObject([{ type: 'started' }, { type: 'ended', reason: 'progress' }]);
+		expect((events[1] as { at: number }).at).toBeLessThan(48);
+	});
+
 	it('trap: localisation jitter of a standing robot is not driving (no dither), and does not blur the onset', () => {
 		const jitter = (time: number) => {
 			const i = Math.round(time * 10);

@@ -1,13 +1,21 @@
 /** Two tracks that turn out to be one person. */
 
 import { fuseCorrelated } from './fusion.ts';
-import { chiSquareGate } from './gating.ts';
-import { coastTrack, mapVariance, predictTrack, type PersonTrack, type TrackerRule } from './person-track.ts';
+import {
+	mapVariance,
+	reachAfter,
+	speedLeftAfter,
+	varianceAfter,
+	type Sighting,
+	type TrackerRule
+} from './person-track.ts';
+import { NOBODY, type TrackTable } from './track-table.ts';
 
 /** One scan as the tracker remembers it: which tracks the robot saw in it. */
 export interface RecentScan {
 	readonly time: number;
-	readonly tracks: ReadonlySet<number>;
+	/** Ids */
+	readonly tracks: readonly number[];
 }
 
 /** By robot, newest last. */
@@ -20,176 +28,182 @@ const FRESH = 0.6;
 /** m nobody walks beyond within FRESH, with room for the distance at which tracks merge */
 const STRIDE = 2.5;
 
-export interface Merged {
-	readonly tracks: PersonTrack[];
-	readonly scans: RecentScans;
-}
-
 /**
  * Merges what has become one person: tracks in the same place with like velocity that no robot has seen apart of late.
  * When both are established they must also have stayed together for `mergeAfter`, so that people who cross or pass each
- * other, each seen by another robot, stay two.
+ * other, each seen by another robot, stay two. Changes rows of `table` and entries of `scans`.
  *
- * @param touched indices of the tracks the present scan has measured; every pair looked at has one of them
+ * @param touched rows the present scan has measured; every pair looked at has one of them
  */
 export function mergeTracks(
-	tracks: readonly PersonTrack[],
+	table: TrackTable,
 	touched: readonly number[],
-	scans: RecentScans,
+	scans: Map<string, readonly RecentScan[]>,
 	time: number,
+	gate: number,
 	rule: TrackerRule
-): Merged {
-	const list: (PersonTrack | null)[] = [...tracks];
-	const measured = new Set(touched);
-	const others = othersNear(tracks, touched, measured, time);
-	let recent = scans;
-	for (const index of touched) {
-		const track = list[index]!;
-		const near = nearestTwin(track, list, others, recent, rule);
+): void {
+	const others = othersNear(table, touched, time);
+	for (const row of touched) {
+		const near = nearestTwin(table, row, others, scans, gate, rule);
 		if (near < 0) {
-			if (track.closeTo && !staysClose(track, list, rule)) list[index] = { ...track, closeTo: null };
+			if (table.closeTo[row] !== NOBODY && !staysClose(table, row, rule)) setCloseTo(table, row, NOBODY, 0);
 			continue;
 		}
-		const twin = list[near]!;
-		const since = track.closeTo?.id === twin.id ? track.closeTo.since : time;
-		const established = time - Math.max(track.bornAt, twin.bornAt) >= rule.mergeAfter;
+		const since = table.closeTo[row] === table.id[near] ? table.closeSince[row]! : time;
+		const established = time - Math.max(table.bornAt[row]!, table.bornAt[near]!) >= rule.mergeAfter;
 		if (established && time - since < rule.mergeAfter) {
-			list[index] = { ...track, closeTo: { id: twin.id, since } };
+			setCloseTo(table, row, table.id[near]!, since);
 			continue;
 		}
-		const merged = mergePair(track, twin, rule);
-		list[index] = merged;
-		list[near] = null;
-		recent = renameInScans(recent, Math.max(track.id, twin.id), merged.id);
+		const stays = Math.min(table.id[row]!, table.id[near]!);
+		const goes = Math.max(table.id[row]!, table.id[near]!);
+		mergePair(table, row, near, rule);
+		renameInScans(scans, table.sightings(row), goes, stays);
 	}
-	return { tracks: list.filter((track) => track !== null), scans: recent };
 }
 
-/** Tracks that any of the touched ones could be merged with. */
-function othersNear(
-	tracks: readonly PersonTrack[],
-	touched: readonly number[],
-	measured: ReadonlySet<number>,
-	time: number
-): number[] {
-	let [minX, minY, maxX, maxY] = [Infinity, Infinity, -Infinity, -Infinity];
-	for (const index of touched) {
-		const { x, y } = tracks[index]!;
-		if (x < minX) minX = x;
-		if (x > maxX) maxX = x;
-		if (y < minY) minY = y;
-		if (y > maxY) maxY = y;
-	}
+function setCloseTo(table: TrackTable, row: number, id: number, since: number): void {
+	table.closeTo[row] = id;
+	table.closeSince[row] = since;
+	table.markChanged(row);
+}
+
+/** Rows that any of the touched ones could be merged with. */
+function othersNear(table: TrackTable, touched: readonly number[], time: number): number[] {
+	const { x, y, seenAt, alive, measuredIn, size } = table;
 	const others: number[] = [];
-	for (let index = 0; index < tracks.length; index += 1) {
-		const { x, y, seenAt } = tracks[index]!;
-		if (x < minX - STRIDE || x > maxX + STRIDE || y < minY - STRIDE || y > maxY + STRIDE) continue;
-		if (time - seenAt <= FRESH && !measured.has(index)) others.push(index);
+	if (touched.length === 0) return others;
+	let [minX, minY, maxX, maxY] = [Infinity, Infinity, -Infinity, -Infinity];
+	for (const row of touched) {
+		minX = Math.min(minX, x[row]!);
+		maxX = Math.max(maxX, x[row]!);
+		minY = Math.min(minY, y[row]!);
+		maxY = Math.max(maxY, y[row]!);
+	}
+	const present = measuredIn[touched[0]!];
+	for (let row = 0; row < size; row += 1) {
+		if (x[row]! < minX - STRIDE || x[row]! > maxX + STRIDE || y[row]! < minY - STRIDE || y[row]! > maxY + STRIDE)
+			continue;
+		if (time - seenAt[row]! <= FRESH && alive[row] === 1 && measuredIn[row] !== present) others.push(row);
 	}
 	return others;
 }
 
 function nearestTwin(
-	track: PersonTrack,
-	list: readonly (PersonTrack | null)[],
+	table: TrackTable,
+	row: number,
 	others: readonly number[],
 	scans: RecentScans,
+	gate: number,
 	rule: TrackerRule
 ): number {
-	const gate = chiSquareGate(rule.gateProbability, 2);
+	const { x, y, vx, vy, variance, cross, speedVariance, updatedAt, alive } = table;
+	const ownX = x[row]!;
+	const ownY = y[row]!;
+	const time = updatedAt[row]!;
 	let nearest = -1;
 	let nearestAt = rule.mergeWithin;
-	for (const index of others) {
-		const other = list[index];
-		if (!other || Math.abs(other.x - track.x) > STRIDE || Math.abs(other.y - track.y) > STRIDE) continue;
-		const there = predictTrack(other, track.updatedAt, rule);
-		const distance = Math.hypot(there.x - track.x, there.y - track.y);
+	for (let k = 0; k < others.length; k += 1) {
+		const other = others[k]!;
+		if (Math.abs(x[other]! - ownX) > STRIDE || Math.abs(y[other]! - ownY) > STRIDE || alive[other] === 0) continue;
+		const dt = time - updatedAt[other]!;
+		const reach = reachAfter(dt);
+		const distance = Math.hypot(x[other]! + reach * vx[other]! - ownX, y[other]! + reach * vy[other]! - ownY);
 		if (distance >= nearestAt) continue;
-		const variance = track.covariance[0]! + there.variance + 2 * mapVariance(track, rule);
-		if (distance * distance > gate * variance) continue;
-		const slip = Math.hypot(there.vx - track.vx, there.vy - track.vy);
-		const slack = track.covariance[10]! + other.covariance[10]! + VELOCITY_SLACK * VELOCITY_SLACK;
-		if (slip * slip > gate * slack || seenApart(track, other, scans, track.updatedAt - rule.apartFor)) continue;
-		nearest = index;
+		const there = varianceAfter(variance[other]!, cross[other]!, speedVariance[other]!, dt, rule.q);
+		if (distance * distance > gate * (variance[row]! + there + 2 * mapVariance(vx[row]!, vy[row]!, rule))) continue;
+		const left = speedLeftAfter(dt);
+		const slip = Math.hypot(left * vx[other]! - vx[row]!, left * vy[other]! - vy[row]!);
+		const slack = speedVariance[row]! + speedVariance[other]! + VELOCITY_SLACK * VELOCITY_SLACK;
+		if (slip * slip > gate * slack || seenApart(table, row, other, scans, time - rule.apartFor)) continue;
+		nearest = other;
 		nearestAt = distance;
 	}
 	return nearest;
 }
 
 /** A noisy reading or two does not end it: only being clearly apart does. */
-function staysClose(
-	{ x, y, closeTo, updatedAt }: PersonTrack,
-	list: readonly (PersonTrack | null)[],
-	rule: TrackerRule
-) {
-	const other = list.find((candidate) => candidate?.id === closeTo?.id);
-	if (!other) return false;
-	const there = predictTrack(other, updatedAt, rule);
-	return Math.hypot(there.x - x, there.y - y) < 2 * rule.mergeWithin;
+function staysClose(table: TrackTable, row: number, rule: TrackerRule): boolean {
+	const { x, y, vx, vy, updatedAt } = table;
+	const other = table.rowOf(table.closeTo[row]!);
+	if (other < 0) return false;
+	const reach = reachAfter(updatedAt[row]! - updatedAt[other]!);
+	const distance = Math.hypot(x[other]! + reach * vx[other]! - x[row]!, y[other]! + reach * vy[other]! - y[row]!);
+	return distance < 2 * rule.mergeWithin;
 }
 
-/** Did any robot report both in one scan since then? */
-function seenApart(a: PersonTrack, b: PersonTrack, scans: RecentScans, since: number): boolean {
-	for (const own of scans.values()) {
+/** Did any robot report both in one scan since then? Only those with a sighting of both can have. */
+function seenApart(table: TrackTable, a: number, b: number, scans: RecentScans, since: number): boolean {
+	const others = table.sightings(b);
+	for (const { robot } of table.sightings(a)) {
+		if (!others.some((sighting) => sighting.robot === robot)) continue;
+		const own = scans.get(robot) ?? [];
 		for (let k = own.length - 1; k >= 0 && own[k]!.time >= since; k -= 1) {
-			if (own[k]!.tracks.has(a.id) && own[k]!.tracks.has(b.id)) return true;
+			const { tracks } = own[k]!;
+			if (tracks.includes(table.id[a]!) && tracks.includes(table.id[b]!)) return true;
 		}
 	}
 	return false;
 }
 
 /**
- * One track from two, under the name of the older. What each knows may come from the same reports, so they are fused by
- * covariance intersection, axis by axis on position and speed.
+ * Makes one track of two in the row of the first, under the name of the older. What each knows may come from the same
+ * reports, so they are fused by covariance intersection, axis by axis on position and speed.
  */
-function mergePair(a: PersonTrack, b: PersonTrack, rule: TrackerRule): PersonTrack {
-	const [older, newer] = a.id < b.id ? [a, b] : [b, a];
-	const updatedAt = Math.max(a.updatedAt, b.updatedAt);
-	const [p, q] = [coastTrack(a, updatedAt, rule.q), coastTrack(b, updatedAt, rule.q)];
-	const axis = (of: typeof p, position: number, speed: number) => ({
+function mergePair(table: TrackTable, row: number, near: number, rule: TrackerRule): void {
+	const { id, x, y, vx, vy, variance, cross, speedVariance, updatedAt, updatedBy, seenAt, bornAt } = table;
+	const older = id[row]! < id[near]! ? row : near;
+	const newer = older === row ? near : row;
+	const seenBy = joinSightings(table.sightings(older), table.sightings(newer));
+	const latest = Math.max(updatedAt[row]!, updatedAt[near]!);
+	table.carry(row, latest, rule.q);
+	table.carry(near, latest, rule.q);
+	const axis = (of: number, position: number, speed: number) => ({
 		x: position,
 		y: speed,
-		covariance: { xx: of.covariance[0]!, xy: of.covariance[2]!, yy: of.covariance[10]! }
+		covariance: { xx: variance[of]!, xy: cross[of]!, yy: speedVariance[of]! }
 	});
-	const alongX = fuseCorrelated(axis(p, p.x, p.vx), axis(q, q.x, q.vx));
-	const alongY = fuseCorrelated(axis(p, p.y, p.vy), axis(q, q.y, q.vy));
-	const covariance = new Float64Array(16);
-	[alongX, alongY].forEach(({ covariance: { xx, xy, yy } }, k) => {
-		covariance[k * 5] = xx;
-		covariance[k * 5 + 2] = xy;
-		covariance[k * 5 + 8] = xy;
-		covariance[k * 5 + 10] = yy;
-	});
-	const seenBy = new Map(newer.seenBy);
-	for (const [robot, sighting] of older.seenBy) {
-		if (sighting.at >= (seenBy.get(robot)?.at ?? -Infinity)) seenBy.set(robot, sighting);
-	}
-	return {
-		...older,
-		x: alongX.x,
-		y: alongY.x,
-		vx: alongX.y,
-		vy: alongY.y,
-		covariance,
-		updatedAt,
-		updatedBy: a.updatedAt >= b.updatedAt ? a.updatedBy : b.updatedBy,
-		seenAt: Math.max(a.seenAt, b.seenAt),
-		bornAt: Math.min(a.bornAt, b.bornAt),
-		hits: a.hits + b.hits,
-		confirmed: a.confirmed || b.confirmed,
-		seenBy,
-		misses: Math.min(a.misses, b.misses),
-		closeTo: null
-	};
+	const alongX = fuseCorrelated(axis(row, x[row]!, vx[row]!), axis(near, x[near]!, vx[near]!));
+	const alongY = fuseCorrelated(axis(row, y[row]!, vy[row]!), axis(near, y[near]!, vy[near]!));
+	[x[row], vx[row], y[row], vy[row]] = [alongX.x, alongX.y, alongY.x, alongY.y];
+	// The same for both axes, because what went in was.
+	const fused = alongX.covariance;
+	[variance[row], cross[row], speedVariance[row]] = [fused.xx, fused.xy, fused.yy];
+	if (updatedAt[row]! < latest) updatedBy[row] = updatedBy[near]!;
+	updatedAt[row] = latest;
+	seenAt[row] = Math.max(seenAt[row]!, seenAt[near]!);
+	bornAt[row] = Math.min(bornAt[row]!, bornAt[near]!);
+	table.hits[row]! += table.hits[near]!;
+	table.confirmed[row] = Math.max(table.confirmed[row]!, table.confirmed[near]!);
+	table.misses[row] = Math.min(table.misses[row]!, table.misses[near]!);
+	id[row] = id[older]!;
+	table.ownSightings(row).splice(0, Infinity, ...seenBy);
+	setCloseTo(table, row, NOBODY, 0);
+	table.remove(near);
+}
+
+/** One sighting per robot: the one that still counts, then the later, then the older track's. */
+function joinSightings(older: readonly Sighting[], newer: readonly Sighting[]): Sighting[] {
+	const worth = ({ localId, at }: Sighting) => (localId === null ? -Infinity : at);
+	const kept = newer.filter((one) => !older.some((own) => own.robot === one.robot && worth(own) >= worth(one)));
+	return [...kept, ...older.filter((own) => !kept.some((one) => one.robot === own.robot))];
 }
 
 /** Who was seen apart from the track that goes was seen apart from the one that stays. */
-function renameInScans(scans: RecentScans, gone: number, stays: number): RecentScans {
+function renameInScans(
+	scans: Map<string, readonly RecentScan[]>,
+	sightings: readonly Sighting[],
+	goes: number,
+	stays: number
+): void {
 	const rename = (scan: RecentScan): RecentScan => {
-		if (!scan.tracks.has(gone)) return scan;
-		const tracks = new Set(scan.tracks).add(stays);
-		tracks.delete(gone);
-		return { ...scan, tracks };
+		if (!scan.tracks.includes(goes)) return scan;
+		const { time, tracks } = scan;
+		return { time, tracks: [...tracks.filter((id) => id !== goes && id !== stays), stays] };
 	};
-	return new Map([...scans].map(([robot, own]) => [robot, own.map(rename)]));
+	for (const { robot } of sightings) {
+		const own = scans.get(robot);
+		if (own) scans.set(robot, own.map(rename));
+	}
 }

@@ -1,7 +1,5 @@
 /** One person as all robots together know them, and where they are expected to be. */
 
-import { processNoise, transport, type KalmanState } from './kalman.ts';
-
 /** One person in one report of one robot, floor frame. */
 export interface PersonMeasurement {
 	/** The robot's own name for the person; may restart, switch or be used again. */
@@ -16,18 +14,31 @@ export interface PersonMeasurement {
 	readonly sd: number;
 }
 
-/** When and where a robot last reported a track, and under which name. */
+/** When a robot last reported a track, and under which name. */
 export interface Sighting {
-	readonly localId: string;
+	readonly robot: string;
+	/**
+	 * Null once the robot has given the name to somebody else: it has reported this person, which keeps them apart from
+	 * others it saw beside them, but no longer counts as following them.
+	 */
+	readonly localId: string | null;
 	/** s */
 	readonly at: number;
-	/** m, as measured */
-	readonly x: number;
-	readonly y: number;
 }
 
-export interface PersonTrack extends KalmanState {
+/** Measurements are round and so is the noise, so x and y share one covariance and nothing ever prefers a direction. */
+export interface PersonTrack {
 	readonly id: number;
+	/** m */
+	readonly x: number;
+	readonly y: number;
+	/** m/s */
+	readonly vx: number;
+	readonly vy: number;
+	/** Covariance of position and speed along each axis: m², m²/s and m²/s² */
+	readonly variance: number;
+	readonly cross: number;
+	readonly speedVariance: number;
 	/** s, time of the state */
 	readonly updatedAt: number;
 	/** Robot whose measurement made the state */
@@ -38,8 +49,8 @@ export interface PersonTrack extends KalmanState {
 	readonly hits: number;
 	/** Seen often enough to be a person and not a glitch; never taken back */
 	readonly confirmed: boolean;
-	/** By robot; robots that have not reported the person for `forgetAfter` are left out. */
-	readonly seenBy: ReadonlyMap<string, Sighting>;
+	/** One per robot; robots that have not reported the person for `forgetAfter` are left out. */
+	readonly seenBy: readonly Sighting[];
 	/** Scans since the last measurement that looked at the place and reported nobody */
 	readonly misses: number;
 	/** Another track that has been in the same place since then, if any */
@@ -114,36 +125,19 @@ export const DEFAULT_TRACKER_RULE: TrackerRule = {
 const WALKS_ON = 0.5;
 const FADES_IN = 1;
 
-/** s of motion and share of velocity left `dt` seconds after the state; before it (dt < 0) motion is straight. */
-export function coasting(dt: number): { reach: number; keep: number } {
-	if (dt <= WALKS_ON) return { reach: dt, keep: 1 };
+/** s of motion `dt` seconds after the state; before it (dt < 0) motion is straight. */
+export function reachAfter(dt: number): number {
+	if (dt <= WALKS_ON) return dt;
 	const fade = Math.min((dt - WALKS_ON) / FADES_IN, 1);
-	return { reach: WALKS_ON + FADES_IN * (fade - (fade * fade) / 2), keep: 1 - fade };
+	return WALKS_ON + FADES_IN * (fade - (fade * fade) / 2);
 }
+
+/** Share of the velocity left `dt` seconds after the state, 0…1. */
+export const speedLeftAfter = (dt: number): number =>
+	dt <= WALKS_ON ? 1 : 1 - Math.min((dt - WALKS_ON) / FADES_IN, 1);
 
 /** s of process noise; somebody who has stopped being seen is not unsure without limit. */
-const noiseTime = (dt: number): number => Math.min(Math.abs(dt), WALKS_ON + FADES_IN / 2);
-
-/** Full state of a track at a time not before it. */
-export function coastTrack(track: PersonTrack, time: number, q: number): KalmanState {
-	const dt = time - track.updatedAt;
-	const { reach, keep } = coasting(dt);
-	const { position, cross, velocity } = processNoise(noiseTime(dt), q);
-	const covariance = transport(track.covariance, reach, keep);
-	for (let axis = 0; axis < 2; axis += 1) {
-		covariance[axis * 5]! += position;
-		covariance[axis * 5 + 2]! += cross;
-		covariance[axis * 5 + 8]! += cross;
-		covariance[axis * 5 + 10]! += velocity;
-	}
-	return {
-		x: track.x + reach * track.vx,
-		y: track.y + reach * track.vy,
-		vx: keep * track.vx,
-		vy: keep * track.vy,
-		covariance
-	};
-}
+export const noiseTimeAfter = (dt: number): number => Math.min(Math.abs(dt), WALKS_ON + FADES_IN / 2);
 
 /**
  * Where a tracked person is at `time`, before or after the state: position m, velocity m/s, and the variance of the
@@ -155,24 +149,25 @@ export function predictTrack(
 	rule: TrackerRule = DEFAULT_TRACKER_RULE
 ): { x: number; y: number; vx: number; vy: number; variance: number } {
 	const dt = time - track.updatedAt;
-	const { reach, keep } = coasting(dt);
+	const reach = reachAfter(dt);
+	const left = speedLeftAfter(dt);
 	return {
 		x: track.x + reach * track.vx,
 		y: track.y + reach * track.vy,
-		vx: keep * track.vx,
-		vy: keep * track.vy,
-		variance: positionVariance(track.covariance, dt, rule.q)
+		vx: left * track.vx,
+		vy: left * track.vy,
+		variance: varianceAfter(track.variance, track.cross, track.speedVariance, dt, rule.q)
 	};
 }
 
-/** m² per axis by which one robot's map and clock may put this person in another place than they are. */
-export const mapVariance = ({ vx, vy }: PersonTrack, { alignmentSd, clockSd }: TrackerRule): number =>
+/** m² per axis by which one robot's map and clock may put a person walking at (vx, vy) m/s in another place. */
+export const mapVariance = (vx: number, vy: number, { alignmentSd, clockSd }: TrackerRule): number =>
 	alignmentSd * alignmentSd + (vx * vx + vy * vy) * clockSd * clockSd;
 
-/** m², the same for x and y: measurements are round, so nothing in the tracker ever prefers a direction. */
-export function positionVariance(p: Float64Array, dt: number, q: number): number {
-	const { reach } = coasting(dt);
-	const noise = noiseTime(dt);
+/** m² per axis, variance of the position `dt` seconds before or after a state with the given covariance. */
+export function varianceAfter(variance: number, cross: number, speedVariance: number, dt: number, q: number): number {
+	const reach = reachAfter(dt);
+	const noise = noiseTimeAfter(dt);
 	// Going back in time must not make a state surer, so the covariance of position and speed counts forwards only.
-	return p[0]! + 2 * Math.max(reach, 0) * p[2]! + reach * reach * p[10]! + (q * noise * noise * noise) / 3;
+	return variance + 2 * Math.max(reach, 0) * cross + reach * reach * speedVariance + (q * noise * noise * noise) / 3;
 }

@@ -5,20 +5,20 @@
  * expected at its time, so that a person two robots report is one track from the first instant on.
  */
 
-import { diagonalCovariance, processNoise, update, type KalmanState } from './kalman.ts';
+import { chiSquareGate } from './gating.ts';
+import { takeMeasurement, withdrawName } from './measurement.ts';
 import { matchPersons } from './person-matching.ts';
 import { mergeTracks, type RecentScan, type RecentScans } from './person-merging.ts';
 import {
-	coastTrack,
 	DEFAULT_TRACKER_RULE,
-	mapVariance,
 	predictTrack,
 	type PersonMeasurement,
 	type PersonTrack,
 	type Sighting,
 	type TrackerRule
 } from './person-track.ts';
-import { chiSquareGate } from './gating.ts';
+import { Survey, surveyScan, type Reach } from './scan-survey.ts';
+import { TrackTable } from './track-table.ts';
 
 export { DEFAULT_TRACKER_RULE, predictTrack };
 export type { PersonMeasurement, PersonTrack, TrackerRule };
@@ -31,6 +31,8 @@ export interface PersonScan {
 	readonly persons: readonly PersonMeasurement[];
 	/** Could this robot see that point in this scan? */
 	readonly sees: (x: number, y: number) => boolean;
+	/** Where `sees` can be true at all; saves asking for everybody on the floor. Left out, anywhere. */
+	readonly reach?: Reach;
 }
 
 /** A measurement that was not used, and why. */
@@ -45,7 +47,7 @@ export interface TrackerState {
 	readonly nextId: number;
 	/** Who was seen together lately, by robot */
 	readonly scans: RecentScans;
-	/** What the last scan held that could not be used */
+	/** What the scans of the last step held that could not be used */
 	readonly dropped: readonly DroppedMeasurement[];
 }
 
@@ -61,56 +63,93 @@ export const startTracker = (): TrackerState => ({ tracks: [], nextId: 1, scans:
  *
  * Scans may come slightly out of order. A scan that was heard before, or is older than the robot's latest by more than
  * `lateLimit`, changes nothing. Measurements that are not finite are left out and listed in `dropped`.
- * Cost: about linear in tracks plus persons.
+ * Cost: linear in tracks plus persons; many scans cost much less with `stepTrackerAll`.
  */
-export function stepTracker(
+export const stepTracker = (
 	state: TrackerState,
 	scan: PersonScan,
 	rule: TrackerRule = DEFAULT_TRACKER_RULE
-): TrackerState {
-	const { robot, time } = scan;
-	const { persons, dropped } = usablePersons(scan, rule);
-	const heard = state.scans.get(robot) ?? [];
-	const latest = heard.at(-1)?.time ?? -Infinity;
-	if (!Number.isFinite(time) || time < latest - rule.lateLimit || heard.some((one) => one.time === time)) {
-		return { ...state, dropped };
-	}
+): TrackerState => stepTrackerAll(state, [scan], rule);
 
-	const { trackOf, namedBefore, moved } = matchPersons(state.tracks, persons, robot, time, rule);
-	const tracks: (PersonTrack | null)[] = [...state.tracks];
-	let nextId = state.nextId;
-	const seen = new Set<number>();
-	const touched = new Set<number>();
-	persons.forEach((person, j) => {
-		const index = trackOf[j]!;
+/** Tracks after some more scans, taken in one by one in the order given; the same as that many calls of `stepTracker`. */
+export function stepTrackerAll(
+	state: TrackerState,
+	scans: readonly PersonScan[],
+	rule: TrackerRule = DEFAULT_TRACKER_RULE
+): TrackerState {
+	if (scans.length === 0) return state;
+	const room = scans.reduce((sum, { persons }) => sum + persons.length, 0);
+	const table = new TrackTable(state.tracks, room);
+	const batch: Batch = {
+		rule,
+		gate: chiSquareGate(rule.gateProbability, 2),
+		table,
+		survey: new Survey(state.tracks.length + room),
+		scans: new Map(state.scans),
+		dropped: [],
+		nextId: state.nextId,
+		taken: 0
+	};
+	for (const scan of scans) takeScan(batch, scan);
+	return {
+		tracks: table.tracks(),
+		nextId: batch.nextId,
+		scans: batch.taken > 0 ? batch.scans : state.scans,
+		dropped: batch.dropped
+	};
+}
+
+/** What is worked on while scans are taken in; nothing of it belongs to the state that was given. */
+interface Batch {
+	readonly rule: TrackerRule;
+	/** Largest squared Mahalanobis distance of a pair */
+	readonly gate: number;
+	readonly table: TrackTable;
+	readonly survey: Survey;
+	readonly scans: Map<string, readonly RecentScan[]>;
+	readonly dropped: DroppedMeasurement[];
+	nextId: number;
+	/** Number of scans taken in */
+	taken: number;
+}
+
+function takeScan(batch: Batch, scan: PersonScan): void {
+	const { rule, gate, table, survey, scans } = batch;
+	const { robot, time } = scan;
+	const { persons, names } = usablePersons(scan, rule, batch.dropped);
+	const heard = scans.get(robot) ?? [];
+	const latest = heard.at(-1)?.time ?? -Infinity;
+	if (!Number.isFinite(time) || time < latest - rule.lateLimit || heard.some((one) => one.time === time)) return;
+	batch.taken += 1;
+
+	surveyScan(survey, table, persons, robot, time, scan.reach, rule);
+	const { trackOf, namedBefore, moved } = matchPersons(survey, table, persons, names, gate, rule);
+	const known = table.size;
+	for (let j = 0; j < persons.length; j += 1) {
+		const person = persons[j]!;
+		const row = trackOf[j]!;
 		const before = namedBefore[j]!;
-		if (before >= 0 && before !== index) tracks[before] = withoutSighting(tracks[before]!, person, robot);
-		if (index >= 0) {
-			tracks[index] = withMeasurement(tracks[index]!, person, robot, time, rule);
-			seen.add(tracks[index].id);
-			touched.add(index);
-			return;
+		if (before >= 0 && before !== row) withdrawName(table, before, person.localId, robot);
+		if (row >= 0) {
+			takeMeasurement(table, row, person, robot, time, gate, rule);
+			table.measuredIn[row] = batch.taken;
+			continue;
 		}
 		// A name the robot has used before, now far from its track, is somebody it has followed: no glitch.
-		touched.add(tracks.length);
-		seen.add(nextId);
-		tracks.push(newTrack(nextId, person, robot, time, moved[j] ? rule.confirmHits : 1, rule));
-		nextId += 1;
-	});
-	for (let index = 0; index < state.tracks.length; index += 1) {
-		if (!touched.has(index)) tracks[index] = withMiss(tracks[index]!, scan, state.scans, rule);
+		const hits = moved[j] === 1 ? rule.confirmHits : 1;
+		table.measuredIn[table.add(newTrack(batch.nextId, person, robot, time, hits, rule))] = batch.taken;
+		batch.nextId += 1;
 	}
+	takeMisses(batch, scan);
 
-	const remaining: PersonTrack[] = [];
-	const measured: number[] = [];
-	tracks.forEach((track, index) => {
-		if (!track) return;
-		if (touched.has(index)) measured.push(remaining.length);
-		remaining.push(track);
-	});
-	const scans = withScan(state.scans, robot, { time, tracks: seen }, rule);
-	const merged = mergeTracks(remaining, measured, scans, time, rule);
-	return { tracks: merged.tracks, nextId, scans: merged.scans, dropped };
+	const touched: number[] = [];
+	for (let e = 0; e < survey.candidates; e += 1) {
+		if (table.measuredIn[survey.row[e]!] === batch.taken) touched.push(survey.row[e]!);
+	}
+	for (let row = known; row < table.size; row += 1) touched.push(row);
+	const tracks = touched.map((row) => table.id[row]!);
+	scans.set(robot, withScan(heard, { time, tracks }, rule));
+	mergeTracks(table, touched, scans, time, gate, rule);
 }
 
 /** Tracks without those nobody can have seen for too long; call it when time passes without scans. */
@@ -136,25 +175,33 @@ export const confirmedTracks = (
 	rule: TrackerRule = DEFAULT_TRACKER_RULE
 ): PersonTrack[] => state.tracks.filter(({ confirmed, seenAt }) => confirmed && now - seenAt <= rule.missTimeout);
 
-function usablePersons({ robot, persons }: PersonScan, rule: TrackerRule) {
-	const dropped: DroppedMeasurement[] = [];
+/** Number of robots that have reported the person within `within` s before `now`. */
+export function countSeeing({ seenBy }: PersonTrack, now: number, within: number): number {
+	let count = 0;
+	for (const { localId, at } of seenBy) if (localId !== null && now - at <= within) count += 1;
+	return count;
+}
+
+/** Persons whose numbers can be used, each once, and the index of the last one of each name. */
+function usablePersons({ robot, persons }: PersonScan, rule: TrackerRule, dropped: DroppedMeasurement[]) {
 	const usable: PersonMeasurement[] = [];
-	const byName = new Map<string, PersonMeasurement>();
+	const names = new Map<string, number>();
 	for (const person of persons) {
 		const { localId, x, y, sd } = person;
 		if (!Number.isFinite(x) || !Number.isFinite(y) || !Number.isFinite(sd)) {
 			dropped.push({ robot, localId, reason: 'not_a_number' });
 			continue;
 		}
-		const twin = byName.get(localId);
+		const index = names.get(localId);
+		const twin = index === undefined ? undefined : usable[index];
 		if (twin && Math.hypot(x - twin.x, y - twin.y) <= SAME_PLACE) {
 			dropped.push({ robot, localId, reason: 'reported_twice' });
 			continue;
 		}
-		byName.set(localId, person);
+		names.set(localId, usable.length);
 		usable.push(sd < rule.sdFloor ? { ...person, sd: rule.sdFloor } : person);
 	}
-	return { persons: usable, dropped };
+	return { persons: usable, names };
 }
 
 function newTrack(
@@ -174,149 +221,56 @@ function newTrack(
 		y: person.y,
 		vx: stated ? vx : 0,
 		vy: stated ? vy : 0,
-		covariance: diagonalCovariance([sd * sd, sd * sd, speedVariance, speedVariance]),
+		variance: sd * sd,
+		cross: 0,
+		speedVariance,
 		updatedAt: time,
 		updatedBy: robot,
 		seenAt: time,
 		bornAt: time,
 		hits,
 		confirmed: hits >= rule.confirmHits,
-		seenBy: new Map([[robot, { localId: person.localId, at: time, x: person.x, y: person.y }]]),
+		seenBy: [{ robot, localId: person.localId, at: time }],
 		misses: 0,
 		closeTo: null
 	};
 }
 
-function withMeasurement(
-	track: PersonTrack,
-	person: PersonMeasurement,
-	robot: string,
-	time: number,
-	rule: TrackerRule
-): PersonTrack {
-	const inTime = time - track.seenAt <= rule.confirmWithin;
-	const hits = inTime ? track.hits + 1 : 1;
-	const { x, y, vx, vy, covariance } = follow(track, person, robot, time, rule);
-	const newest = time >= track.updatedAt;
-	// Written out, not spread: this runs for every person of every scan.
-	return {
-		id: track.id,
-		x,
-		y,
-		vx,
-		vy,
-		covariance,
-		updatedAt: newest ? time : track.updatedAt,
-		updatedBy: newest ? robot : track.updatedBy,
-		seenAt: Math.max(track.seenAt, time),
-		bornAt: inTime || track.confirmed ? track.bornAt : time,
-		hits,
-		confirmed: track.confirmed || hits >= rule.confirmHits,
-		seenBy: withSighting(track.seenBy, robot, person, time, rule),
-		misses: 0,
-		closeTo: track.closeTo
-	};
-}
-
-/** The state with one more measurement in it, at the later of the two times. */
-function follow(
-	track: PersonTrack,
-	person: PersonMeasurement,
-	robot: string,
-	time: number,
-	rule: TrackerRule
-): KalmanState {
-	const age = track.updatedAt - time;
-	if (age > rule.lateLimit) return track;
-	const noise = person.sd * person.sd + mapNoise(track, person, robot, time, rule);
-	if (age > 0) {
-		// An older look at a newer state: carried along with the person, and the less sure for it.
-		const drift = track.covariance[10]! * age * age + processNoise(age, rule.q).position;
-		return update(track, person.x + age * track.vx, person.y + age * track.vy, round(noise + drift)).state;
+/** Counts a miss for everybody the robot must have seen and did not report, and removes those who are gone. */
+function takeMisses({ table, survey, scans, rule, taken }: Batch, { robot, time, sees }: PersonScan): void {
+	for (let k = 0; k < survey.inView; k += 1) {
+		const row = survey.inViewRow[k]!;
+		if (table.measuredIn[row] === taken) continue;
+		const confirmed = table.confirmed[row] === 1;
+		const unseenFor = time - table.seenAt[row]!;
+		if (unseenFor > (confirmed ? rule.missTimeout : rule.confirmWithin)) {
+			table.remove(row);
+			continue;
+		}
+		if (!mayMiss(table.sightings(row), robot, scans) || !sees(survey.inViewX[k]!, survey.inViewY[k]!)) continue;
+		const misses = table.misses[row]! + 1;
+		table.misses[row] = misses;
+		table.markChanged(row);
+		if (confirmed ? misses >= rule.missesToDelete || unseenFor >= rule.missedFor : misses >= GLITCH_MISSES) {
+			table.remove(row);
+		}
 	}
-	const expected = coastTrack(track, time, rule.q);
-	const surprise = (person.x - expected.x) ** 2 + (person.y - expected.y) ** 2;
-	// Outside the gate the person has turned more sharply than expected: trust the motion less, until it would fit.
-	const fitting = (surprise / chiSquareGate(rule.gateProbability, 2) - noise) / expected.covariance[0]!;
-	const covariance = fitting > 1 ? expected.covariance.map((value) => value * fitting) : expected.covariance;
-	return update({ ...expected, covariance }, person.x, person.y, round(noise)).state;
-}
-
-function withSighting(
-	seenBy: ReadonlyMap<string, Sighting>,
-	robot: string,
-	person: PersonMeasurement,
-	time: number,
-	{ forgetAfter }: TrackerRule
-): ReadonlyMap<string, Sighting> {
-	const kept = new Map(seenBy);
-	for (const [name, { at }] of kept) if (time - at > forgetAfter) kept.delete(name);
-	const own = kept.get(robot);
-	return own && own.at > time ? kept : kept.set(robot, { localId: person.localId, at: time, x: person.x, y: person.y });
-}
-
-/**
- * m² that a measurement is the less sure because another robot's map made the track. In one instant the first robot
- * sets the place and the next ones are opinions in another map. Across instants the noise is held to what the robot
- * itself claims, so that positions it is sure of (recordings) are followed exactly.
- */
-function mapNoise(
-	track: PersonTrack,
-	{ sd }: PersonMeasurement,
-	robot: string,
-	time: number,
-	rule: TrackerRule
-): number {
-	const { alignmentSd, instant, forgetAfter } = rule;
-	if (track.updatedBy !== robot && Math.abs(time - track.updatedAt) < instant) return mapVariance(track, rule);
-	for (const [name, { at }] of track.seenBy) {
-		if (name !== robot && time - at <= forgetAfter) return Math.min(alignmentSd, sd) ** 2;
-	}
-	return 0;
-}
-
-const round = (variance: number) => ({ xx: variance, xy: 0, yy: variance });
-
-/** The robot uses this name for somebody else now. */
-function withoutSighting(track: PersonTrack, { localId }: PersonMeasurement, robot: string): PersonTrack {
-	if (track.seenBy.get(robot)?.localId !== localId) return track;
-	const seenBy = new Map(track.seenBy);
-	seenBy.delete(robot);
-	return { ...track, seenBy };
-}
-
-/** The track after a scan that did not report it; null when the person is gone. */
-function withMiss(
-	track: PersonTrack,
-	{ robot, time, sees }: PersonScan,
-	scans: RecentScans,
-	rule: TrackerRule
-): PersonTrack | null {
-	const unseenFor = time - track.seenAt;
-	if (unseenFor <= 0) return track;
-	if (unseenFor > (track.confirmed ? rule.missTimeout : rule.confirmWithin)) return null;
-	const { x, y } = predictTrack(track, time, rule);
-	if (!sees(x, y) || !mayMiss(track, robot, scans)) return track;
-	const misses = track.misses + 1;
-	const gone = track.confirmed ? misses >= rule.missesToDelete || unseenFor >= rule.missedFor : misses >= GLITCH_MISSES;
-	return gone ? null : { ...track, misses };
 }
 
 /**
  * Somebody may stand between this robot and the person. So it only counts as a miss when the robot has seen the person
  * before, or when every robot that has seen them has looked again in vain.
  */
-function mayMiss(track: PersonTrack, robot: string, scans: RecentScans): boolean {
-	if (track.seenBy.has(robot)) return true;
-	for (const [name, { at }] of track.seenBy) {
-		if (!((scans.get(name)?.at(-1)?.time ?? Infinity) > at)) return false;
-	}
-	return true;
+function mayMiss(seenBy: readonly Sighting[], robot: string, scans: RecentScans): boolean {
+	if (seenBy.some((sighting) => sighting.robot === robot && sighting.localId !== null)) return true;
+	return seenBy.every(
+		(sighting) => sighting.localId === null || (scans.get(sighting.robot)?.at(-1)?.time ?? Infinity) > sighting.at
+	);
 }
 
-function withScan(scans: RecentScans, robot: string, scan: RecentScan, rule: TrackerRule): RecentScans {
-	const own = (scans.get(robot) ?? []).filter(({ time }) => scan.time - time <= rule.apartFor);
+function withScan(heard: readonly RecentScan[], scan: RecentScan, rule: TrackerRule): RecentScan[] {
+	const own = heard.filter(({ time }) => scan.time - time <= rule.apartFor);
 	const after = own.findIndex(({ time }) => time > scan.time);
 	own.splice(after < 0 ? own.length : after, 0, scan);
-	return new Map(scans).set(robot, own);
+	return own;
 }

@@ -181,7 +181,7 @@ async function raiseFor(trx: Transaction<Database>, site: Site, floor: string, h
 		floorId: stored.id,
 		zoneId: zoneIdOf(site, floor, halt.zone),
 		place: zone ? `${zone.name}, ${stored.floor.name}` : stored.floor.name,
-		what: `${site.marks.get(halt.robot) ?? halt.robot} ${what}`,
+		what,
 		action,
 		x: halt.x,
 		y: halt.y,
