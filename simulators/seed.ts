@@ -37,8 +37,8 @@ export interface SeedOptions {
 	/** Password of all demo accounts; made up when not given and none is kept. */
 	readonly password: string | undefined;
 	readonly nowMs: number;
-	/** Whole past weeks of history */
-	readonly weeks: number;
+	/** Whole past weeks of history, 8 unless told otherwise */
+	readonly weeks?: number;
 	readonly log: (line: string) => void;
 }
 
@@ -65,7 +65,7 @@ export async function seed(options: SeedOptions): Promise<{ emails: readonly str
 		const password = await ensureAccounts(db, options);
 		const history = await seedHistory(
 			{ db, raw },
-			{ venue: SALTMARSH.venue, venueId, fleet, seed: 1, nowMs, weeks: options.weeks }
+			{ venue: SALTMARSH.venue, venueId, fleet, seed: 1, nowMs, weeks: options.weeks ?? 8 }
 		);
 		if (history) log(`${history.days} past days with ${history.halts} halts.`);
 		return { emails: ACCOUNTS.map(({ role }) => mailOf(role)), password };
@@ -112,7 +112,6 @@ async function main(): Promise<void> {
 		signInFile: join(dirname(databasePath), 'demo-sign-in.json'),
 		password: process.env.DEMO_PASSWORD || undefined,
 		nowMs: Date.now(),
-		weeks: 8,
 		log: (line) => console.log(line)
 	});
 	console.log(`Seeded in ${((performance.now() - started) / 1000).toFixed(1)} s. Sign in as ${emails.join(', ')}`);

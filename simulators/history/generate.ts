@@ -123,7 +123,7 @@ function densityRows(zone: HistoryZone, day: OpenDay, level: Float64Array, rando
 	const rows: DensityRow[] = [];
 	let seen = random.between(0.3, 0.9);
 	for (let m = 0; m < OPEN_MINUTES; m++) {
-		seen = Math.min(0.95, Math.max(0.05, seen + random.normal(0, 0.06)));
+		seen = round(Math.min(0.95, Math.max(0.05, seen + random.normal(0, 0.06))), 3);
 		const observedAreaS = zone.area * seen * 60;
 		const measured = seen >= LEAST_COVERAGE;
 		// Heads counted in what was seen: the mean wobbles as a count of that size does.
@@ -137,7 +137,7 @@ function densityRows(zone: HistoryZone, day: OpenDay, level: Float64Array, rando
 			minuteMs: day.opensMs + m * 60_000,
 			mean: measured ? round(mean, 4) : null,
 			peak: measured ? round(mean * (1.1 + random.exponential(0.25)), 4) : null,
-			coverage: round(seen, 3),
+			coverage: seen,
 			observedAreaS: round(observedAreaS, 1),
 			personS: round(heads * 60, 1)
 		});

@@ -46,16 +46,24 @@ const LEAST_HALT = 4;
 const LEAST_PROGRESS = 0.2;
 /** m of new progress that ends a halt */
 const END_PROGRESS = 0.3;
-/** m; within this of the best reached, the robot has stopped */
-const AT_BEST = 0.05;
+/** m; a halt has ended where the last bit of this new progress began, so that creeping before it is not counted as going */
+const LAST_BIT = 0.25;
+/** s of history kept */
+const KEPT = 12;
+
+interface Step {
+	readonly time: number;
+	readonly remaining: number;
+	/** Least way left so far on this task: backing off and coming back is no progress */
+	readonly best: number;
+	readonly travelled: number;
+}
 
 /** Follows one robot with perfect knowledge of the way left. */
 export class HaltRecorder {
 	#task: string | null = null;
-	/** (time, remaining, travelled) since the last real progress. */
-	#history: [number, number, number][] = [];
-	#anchor = Infinity;
-	#halted: { best: number; stuckAt: number; fault: boolean } | null = null;
+	#history: Step[] = [];
+	#halted: { readonly best: number } | null = null;
 
 	get halted(): boolean {
 		return this.#halted !== null;
@@ -68,36 +76,32 @@ export class HaltRecorder {
 			this.#reset(taskId);
 			return halted ? { type: 'ended', at: time, by } : null;
 		}
-		if (halted) return this.#watchForEnd(halted, time, remaining, fault);
+		const best = Math.min(remaining, this.#history.at(-1)?.best ?? Infinity);
+		this.#history.push({ time, remaining, best, travelled });
+		if (time - this.#history[0]!.time > KEPT) this.#history.shift();
+		if (halted) return this.#watchForEnd(halted.best, remaining, fault);
 		if (fault) {
-			this.#halted = { best: remaining, stuckAt: time, fault: true };
+			this.#halted = { best };
 			return { type: 'started', kind: 'fault', cause: fault, onset: time };
 		}
-		if (remaining <= this.#anchor - LEAST_PROGRESS || this.#history.length === 0) {
-			this.#anchor = remaining;
-			this.#history = [];
-		}
-		this.#history.push([time, remaining, travelled]);
-		const [since] = this.#history[0]!;
-		if (time - since < LEAST_HALT) return null;
-		const best = Math.min(...this.#history.map(([, left]) => left));
-		const [onset, , before] = this.#history.find(([, left]) => left <= best + AT_BEST)!;
-		if (time - onset < LEAST_HALT) return null;
-		this.#halted = { best, stuckAt: time, fault: false };
-		const wandering = travelled - before > 1;
-		const kind = wandering ? 'dither' : cause === 'people' ? 'freeze' : 'stall';
-		return { type: 'started', kind, cause, onset };
+		const before = this.#history.findLast((step) => time - step.time >= LEAST_HALT - 1e-6);
+		if (!before || before.best - best >= LEAST_PROGRESS) return null;
+		const from = this.#lastGoing();
+		if (time - from.time < LEAST_HALT - 1e-6) return null;
+		this.#halted = { best };
+		const kind = travelled - from.travelled > 1 ? 'dither' : cause === 'people' ? 'freeze' : 'stall';
+		return { type: 'started', kind, cause, onset: from.time };
 	}
 
-	#watchForEnd(
-		halted: { best: number; stuckAt: number; fault: boolean },
-		time: number,
-		remaining: number,
-		fault: string | null
-	): HaltChange | null {
-		if (fault || remaining > halted.best - AT_BEST) halted.stuckAt = time;
-		if (fault || remaining > halted.best - END_PROGRESS) return null;
-		const at = halted.stuckAt;
+	/** The step after which it got on at less than the least rate: where best progress leads that rate most. */
+	#lastGoing(): Step {
+		const lead = ({ time, best }: Step) => -best - (LEAST_PROGRESS / LEAST_HALT) * time;
+		return this.#history.reduce((found, step) => (lead(step) > lead(found) + 1e-9 ? step : found));
+	}
+
+	#watchForEnd(best: number, remaining: number, fault: string | null): HaltChange | null {
+		if (fault || remaining > best - END_PROGRESS) return null;
+		const at = (this.#history.findLast((step) => step.remaining >= remaining + LAST_BIT) ?? this.#history[0]!).time;
 		this.#reset(this.#task);
 		return { type: 'ended', at, by: 'progress' };
 	}
@@ -105,7 +109,6 @@ export class HaltRecorder {
 	#reset(task: string | null): void {
 		this.#task = task;
 		this.#history = [];
-		this.#anchor = Infinity;
 		this.#halted = null;
 	}
 }

@@ -31,7 +31,14 @@ interface Sum {
 }
 
 export class DensityScore {
-	readonly #bands: Sum[] = COVERAGE_BANDS.map(() => ({ results: 0, measured: 0, classic: 0, truly: 0, onSeen: 0, squares: 0 }));
+	readonly #bands: Sum[] = COVERAGE_BANDS.map(() => ({
+		results: 0,
+		measured: 0,
+		classic: 0,
+		truly: 0,
+		onSeen: 0,
+		squares: 0
+	}));
 
 	/** Takes one result per zone of a floor and the people on it at that moment. Zones that were not measured do not count. */
 	add(model: FloorModel, zones: readonly ZoneResult[], observed: Uint8Array, people: Population): void {

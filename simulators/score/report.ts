@@ -71,6 +71,10 @@ function haltFigures({ pairs, missed, falseAlarms }: HaltMatches): Scoreboard {
 		precision: ratio(pairs.length, pairs.length + falseAlarms.length),
 		kind_accuracy: ratio(pairs.filter(isKindRight).length, pairs.length),
 		verdict_agreement: ratio(seen.filter(({ truth, found }) => truth.verdict === found.verdict).length, seen.length),
+		verdict_agreement_open: ratio(
+			seen.filter(({ truth, found }) => isOpen(truth) === isOpen(found)).length,
+			seen.length
+		),
 		verdict_unseen: ratio(judged.length - seen.length, judged.length),
 		onset_median_s: rounded(onsetMedian ?? null),
 		onset_p95_s: rounded(onsetP95 ?? null),
@@ -103,6 +107,8 @@ function haltFigures({ pairs, missed, falseAlarms }: HaltMatches): Scoreboard {
 }
 
 const isKindRight = ({ truth, found }: HaltMatches['pairs'][number]): boolean => truth.kind === found.kind;
+
+const isOpen = ({ verdict }: ExpectedHalt | DetectedHalt): boolean => verdict === 'open';
 
 const named = (what: string, counts: ReadonlyMap<string, number>): Scoreboard =>
 	Object.fromEntries([...counts].sort(([a], [b]) => (a < b ? -1 : 1)).map(([pair, n]) => [`${what} ${pair}`, n]));

@@ -3,7 +3,7 @@
 import { robotTopic } from '../../src/lib/contracts/mqtt.ts';
 import type { EngineEvent } from '../../src/lib/domain/engine/events.ts';
 import type { Observation, RejectionReason } from '../../src/lib/domain/engine/observation.ts';
-import { DEFAULT_RULES } from '../../src/lib/domain/engine/rules.ts';
+import { DEFAULT_RULES, type EngineRules } from '../../src/lib/domain/engine/rules.ts';
 import {
 	createVenueContext,
 	createVenueState,
@@ -30,6 +30,8 @@ export interface ScoreOptions {
 	readonly robots: number;
 	/** Most persons in the venue; null for as many as in the demo */
 	readonly people: number | null;
+	/** Rules to try; the default ones when left out. What is true follows the halt and room rules tried. */
+	readonly rules?: EngineRules;
 	/** Shown everything after each step of 0.1 s; it must not change anything. */
 	readonly onStep?: (world: World, state: VenueState) => void;
 }
@@ -60,15 +62,23 @@ export const WARM_UP_S = 30;
 const SAMPLE_EVERY_S = 10;
 
 /** Runs the simulation as fast as the machine can. The same options give the same evidence. */
-export function runScore({ seed, hours, faults, robots, people, onStep }: ScoreOptions): Evidence {
+export function runScore({
+	seed,
+	hours,
+	faults,
+	robots,
+	people,
+	onStep,
+	rules = DEFAULT_RULES
+}: ScoreOptions): Evidence {
 	const fleet = fleetOf(robots);
 	const scenario = scoreScenario(faults, people);
 	const world = new World({ venue: SALTMARSH, fleet, scenario, seed, epoch: EPOCH_S });
 	const floors = SALTMARSH.floors.map(({ floor }) => floor);
-	const context = createVenueContext(SALTMARSH.venue.key, floors, fleet, DEFAULT_RULES);
+	const context = createVenueContext(SALTMARSH.venue.key, floors, fleet, rules);
 	const models = floors.map(({ key }) => context.floors.get(key)!.model);
-	const moments = new TrueMoments(world, models, DEFAULT_RULES);
-	const halts = new TrueHalts(world, moments, DEFAULT_RULES.halt);
+	const moments = new TrueMoments(world, models, rules);
+	const halts = new TrueHalts(world, moments, rules.halt);
 	const known = new Set(fleet.map(({ key }) => key));
 	const rejected = new Map<RejectionReason, number>();
 	const reject = (reason: RejectionReason) => void rejected.set(reason, (rejected.get(reason) ?? 0) + 1);

@@ -1,7 +1,7 @@
 /** The scoreboard over a few simulated minutes: the same again for the same seed, and good enough to let a change in. */
 
 import { beforeAll, describe, expect, it } from 'vitest';
-import { makeScoreboard, matchEvidence, type Scoreboard } from '../../simulators/score/report.ts';
+import { makeScoreboard, type Scoreboard } from '../../simulators/score/report.ts';
 import { matchHalts, type DetectedHalt, type ExpectedHalt } from '../../simulators/score/halt-score.ts';
 import { runScore, type ScoreOptions } from '../../simulators/score/run.ts';
 

@@ -8,9 +8,12 @@ import type { Robot } from '../floor.ts';
 import { currentFlexibility, startFlexibility, stepFlexibility, type FlexibilityState } from '../room/flexibility.ts';
 import {
 	confirmedTracks,
+	countSeeing,
 	expireTracks,
 	predictTrack,
 	startTracker,
+	stepTrackerAll,
+	type PersonScan,
 	type TrackerState
 } from '../tracking/person-tracks.ts';
 import { measureDensity, noDensity, type DensityStage } from './density-stage.ts';
@@ -177,9 +180,10 @@ const MINUTES_EVERY_S = 5;
 
 function hearAll({ model, rules, robots }: FloorContext, state: FloorState, observations: readonly Observation[]) {
 	const views = new Map(state.robots);
+	const scans: PersonScan[] = [];
 	const looks: View[] = [];
 	const events: EngineEvent[] = [];
-	let { tracker, listeningSince, scannedAt } = state;
+	let { listeningSince, scannedAt } = state;
 	for (const observation of observations) {
 		if (observation.kind === 'listening') {
 			listeningSince = observation.listening ? (listeningSince ?? observation.receivedAt) : null;
@@ -188,13 +192,16 @@ function hearAll({ model, rules, robots }: FloorContext, state: FloorState, obse
 		const robot = robots.get(observation.robot);
 		if (!robot) continue;
 		const view = views.get(robot.key) ?? startRobotView(robot);
-		const heard = hear(model, rules, view, tracker, observation);
+		const heard = hear(model, rules, view, observation);
 		views.set(robot.key, heard.view);
-		tracker = heard.tracker;
-		if (heard.scannedAt !== null) scannedAt = Math.max(scannedAt, heard.scannedAt);
+		if (heard.scan) {
+			scans.push(heard.scan);
+			scannedAt = Math.max(scannedAt, heard.scan.time);
+		}
 		if (heard.look) looks.push(heard.look);
 		events.push(...heard.events);
 	}
+	const tracker = stepTrackerAll(state.tracker, scans, rules.tracker);
 	return { robots: views, tracker, looks, events, listeningSince, scannedAt };
 }
 
@@ -203,8 +210,7 @@ function personPoints(model: FloorModel, tracker: TrackerState, rules: EngineRul
 	for (const track of confirmedTracks(tracker, now, rules.tracker)) {
 		const { x, y, vx, vy } = predictTrack(track, now);
 		if (isPrivate(model, x, y)) continue;
-		let seenBy = 0;
-		for (const { at } of track.seenBy.values()) if (now - at <= SEEN_NOW_S) seenBy += 1;
+		const seenBy = countSeeing(track, now, SEEN_NOW_S);
 		points.push({ id: track.id, x, y, vx, vy, seenBy, age: Math.max(0, now - track.seenAt) });
 	}
 	return points;

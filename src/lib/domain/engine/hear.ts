@@ -3,7 +3,7 @@
 import { applySimilarity, rotateHeading } from '../geometry/similarity.ts';
 import type { Similarity } from '../geometry/types.ts';
 import { stepClock } from '../tracking/clock.ts';
-import { stepTracker, type PersonMeasurement, type TrackerState } from '../tracking/person-tracks.ts';
+import type { PersonMeasurement, PersonScan } from '../tracking/person-tracks.ts';
 import type { EngineEvent } from './events.ts';
 import { isPrivate, type FloorModel } from './floor-model.ts';
 import { isInView, type View } from './observed.ts';
@@ -13,9 +13,8 @@ import type { EngineRules } from './rules.ts';
 
 export interface Heard {
 	readonly view: RobotView;
-	readonly tracker: TrackerState;
-	/** s, corrected, when people were looked for; null when this was no such message */
-	readonly scannedAt: number | null;
+	/** Who was seen, floor frame and corrected time; null when this was no such message */
+	readonly scan: PersonScan | null;
 	/** A look to be added to the observed area, or null */
 	readonly look: View | null;
 	readonly events: readonly EngineEvent[];
@@ -28,15 +27,9 @@ const POSE_FRESH_S = 2;
 /** s between two looks of one robot that are drawn into the observed area; well inside the window of 2 s. */
 const LOOK_EVERY_S = 0.4;
 
-/** The robot's view and the tracks after one observation. */
-export function hear(
-	model: FloorModel,
-	rules: EngineRules,
-	view: RobotView,
-	tracker: TrackerState,
-	observation: RobotObservation
-): Heard {
-	const unchanged: Heard = { view, tracker, scannedAt: null, look: null, events: [] };
+/** The robot's view after one observation, and what the observation adds to the picture of the floor. */
+export function hear(model: FloorModel, rules: EngineRules, view: RobotView, observation: RobotObservation): Heard {
+	const unchanged: Heard = { view, scan: null, look: null, events: [] };
 	switch (observation.kind) {
 		case 'connection':
 			return { ...unchanged, view: { ...view, link: observation.status } };
@@ -53,7 +46,7 @@ export function hear(
 			const heard =
 				observation.kind === 'pose'
 					? hearPose(model, timed.view, observation, transform, timed.time)
-					: hearPeople(model, rules, timed.view, tracker, observation, transform, timed.time);
+					: hearPeople(model, timed.view, observation, transform, timed.time);
 			return { ...unchanged, ...heard, events: timed.events };
 		}
 	}
@@ -98,16 +91,14 @@ function hearPose(model: FloorModel, view: RobotView, said: PoseObservation, tra
 
 function hearPeople(
 	model: FloorModel,
-	rules: EngineRules,
 	view: RobotView,
-	tracker: TrackerState,
 	said: PeopleObservation,
 	transform: Similarity,
 	time: number
 ): Omit<Heard, 'events'> {
 	const pose = poseAt(view, time);
 	if (!pose || Math.abs(pose.time - time) > POSE_FRESH_S || view.state?.localized === false) {
-		return { view, tracker, scannedAt: null, look: null };
+		return { view, scan: null, look: null };
 	}
 	const field = said.fieldOfView;
 	const look: View = {
@@ -139,14 +130,15 @@ function hearPeople(
 			sd: (person.sd ?? UNSTATED_SD_M) * transform.scale
 		});
 	}
-	const scan = { robot: said.robot, time, persons, sees: (x: number, y: number) => isInView(model, look, x, y) };
-	const due = time - view.markedAt >= LOOK_EVERY_S;
-	return {
-		view: due ? { ...view, markedAt: time } : view,
-		tracker: stepTracker(tracker, scan, rules.tracker),
-		scannedAt: time,
-		look: due ? look : null
+	const scan: PersonScan = {
+		robot: view.robot.key,
+		time,
+		persons,
+		sees: (x, y) => isInView(model, look, x, y),
+		reach: { x: look.x, y: look.y, radius: look.range }
 	};
+	const due = time - view.markedAt >= LOOK_EVERY_S;
+	return { view: due ? { ...view, markedAt: time } : view, scan, look: due ? look : null };
 }
 
 /** The robot with its task brought into the floor frame by the map it is on. */

@@ -45,18 +45,18 @@ export function lookAround(
 	const reach = maxSpeed * roomRule.horizonS;
 	const observedShare = computeObservedShare(model, observed, x, y, reach);
 	let within2m = 0;
-	let nearest = Infinity;
+	let nearest2 = Infinity;
 	for (const person of persons) {
-		const distance = Math.hypot(person.x - x, person.y - y);
-		if (distance <= 2) within2m += 1;
-		if (distance < nearest) nearest = distance;
+		const distance2 = (person.x - x) * (person.x - x) + (person.y - y) * (person.y - y);
+		if (distance2 <= 4) within2m += 1;
+		if (distance2 < nearest2) nearest2 = distance2;
 	}
 	const base = {
 		time: now,
 		density: local.density,
 		coverage: local.coverage,
 		personsWithin2m: within2m,
-		nearestPerson: nearest === Infinity ? null : nearest,
+		nearestPerson: nearest2 === Infinity ? null : Math.sqrt(nearest2),
 		observedShare,
 		flexibility
 	};
@@ -104,7 +104,10 @@ function nearPersons(
 	flexibility: number
 ): RoomPerson[] {
 	const limit = reach + PERSON_SPEED * room.horizonS;
-	return persons
-		.filter((person) => Math.hypot(person.x - x, person.y - y) <= limit)
-		.map(({ x: px, y: py, vx, vy }) => ({ x: px, y: py, vx, vy, radius: room.personRadiusM, flexibility }));
+	const near: RoomPerson[] = [];
+	for (const { x: px, y: py, vx, vy } of persons) {
+		if ((px - x) * (px - x) + (py - y) * (py - y) > limit * limit) continue;
+		near.push({ x: px, y: py, vx, vy, radius: room.personRadiusM, flexibility });
+	}
+	return near;
 }

@@ -82,23 +82,24 @@ function mapNoise(table: TrackTable, row: number, sd: number, robot: string, tim
 	return 0;
 }
 
-/** Keeps one sighting per robot and none older than what still matters: being followed, or having been seen apart. */
+/** Keeps one sighting per robot: named while it follows the person, nameless while it matters whom it saw beside them. */
 function addSighting(
 	table: TrackTable,
 	row: number,
 	robot: string,
 	localId: string,
 	time: number,
-	{ forgetAfter, apartFor }: TrackerRule
+	{ forgetAfter, apartFor, lateLimit }: TrackerRule
 ): void {
 	const seenBy = table.ownSightings(row);
-	const keepFor = Math.max(forgetAfter, apartFor);
 	let kept = 0;
 	let own = -1;
 	for (let k = 0; k < seenBy.length; k += 1) {
-		const sighting = seenBy[k]!;
+		let sighting = seenBy[k]!;
+		const age = time - sighting.at;
 		if (sighting.robot === robot) own = kept;
-		else if (time - sighting.at > keepFor) continue;
+		else if (age > forgetAfter && age > apartFor + lateLimit) continue;
+		else if (age > forgetAfter && sighting.localId !== null) sighting = { ...sighting, localId: null };
 		seenBy[kept] = sighting;
 		kept += 1;
 	}

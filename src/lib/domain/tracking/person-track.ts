@@ -18,8 +18,8 @@ export interface PersonMeasurement {
 export interface Sighting {
 	readonly robot: string;
 	/**
-	 * Null once the robot has given the name to somebody else: it has reported this person, which keeps them apart from
-	 * others it saw beside them, but no longer counts as following them.
+	 * Null once the robot has given the name to somebody else, or has not reported the person for `forgetAfter`: it no
+	 * longer counts as following them, but has seen them apart from whoever it saw beside them.
 	 */
 	readonly localId: string | null;
 	/** s */
@@ -49,7 +49,7 @@ export interface PersonTrack {
 	readonly hits: number;
 	/** Seen often enough to be a person and not a glitch; never taken back */
 	readonly confirmed: boolean;
-	/** One per robot; robots that have not reported the person for `forgetAfter` are left out. */
+	/** One per robot that has reported the person lately: within `forgetAfter`, or `apartFor` before the latest scan */
 	readonly seenBy: readonly Sighting[];
 	/** Scans since the last measurement that looked at the place and reported nobody */
 	readonly misses: number;

@@ -105,24 +105,25 @@ export function surveyScan(
 		survey.y[e] = ey;
 		survey.elapsed[e] = elapsed;
 		survey.variance[e] = variance;
-		compareMaps(survey, e, table.sightings(row), maps, robot, time - rule.forgetAfter);
+		compareMaps(survey, e, table.sightings(row), maps, robot, time, rule.forgetAfter);
 	}
 }
 
-/** Who has seen candidate `e` since: under which name this robot did, and how many maps that makes. */
+/** Who has seen candidate `e` lately: under which name this robot did, and how many maps that makes. */
 function compareMaps(
 	survey: Survey,
 	e: number,
 	sightings: readonly Sighting[],
 	maps: number,
 	robot: string,
-	since: number
+	time: number,
+	forgetAfter: number
 ): void {
 	let own: string | null = null;
 	let others = false;
 	for (let k = 0; k < sightings.length; k += 1) {
 		const sighting = sightings[k]!;
-		if (sighting.localId === null || sighting.at < since) continue;
+		if (sighting.localId === null || time - sighting.at > forgetAfter) continue;
 		if (sighting.robot === robot) own = sighting.localId;
 		else others = true;
 	}

@@ -1,17 +1,17 @@
 /** Entry of the broker's worker thread: the broker, fed with credentials from the database. */
 
-import pino from 'pino';
 import { parentPort, workerData } from 'node:worker_threads';
 import type { BrokerStart, FromBroker, ToBroker } from '../../contracts/threads.ts';
 import { Failure } from '../../domain/failure.ts';
 import { startBroker, type Broker } from '../broker/broker.ts';
 import { readRobotCredentials } from '../broker/read-credentials.ts';
 import { openDatabase, type OpenDatabase } from '../db/connection.ts';
+import { createLog } from '../telemetry/log.ts';
 
 const RELOAD_AGAIN_MS = 1000;
 
 const start = workerData as BrokerStart;
-const log = pino({ level: start.log_level, name: 'broker' });
+const log = createLog({ logLevel: start.log_level }).child({ thread: 'broker' });
 const tell = (message: FromBroker) => parentPort?.postMessage(message);
 
 async function run(): Promise<void> {

@@ -1,12 +1,12 @@
 /** Entry of the engine's worker thread. */
 
 import { parentPort, workerData } from 'node:worker_threads';
-import pino from 'pino';
 import type { EngineStart, FromEngine, ToEngine } from '../../contracts/threads.ts';
 import { startEngine } from '../engine/engine.ts';
+import { createLog } from '../telemetry/log.ts';
 
 const start = workerData as EngineStart;
-const log = pino({ level: start.log_level, name: 'engine' });
+const log = createLog({ logLevel: start.log_level }).child({ thread: 'engine' });
 const tell = (message: FromEngine) => parentPort?.postMessage(message);
 
 try {
