@@ -8,7 +8,18 @@ import svelteConfig from './svelte.config.js';
 const ban = (names, message) => ({
 	'no-restricted-imports': ['error', { patterns: [{ group: names, message }] }]
 });
-const OUTSIDE_PURE = ['node:*', 'svelte', 'svelte/*', '@sveltejs/*', 'kysely', 'better-sqlite3', '$app/*', '$env/*', 'mqtt', 'aedes'];
+const OUTSIDE_PURE = [
+	'node:*',
+	'svelte',
+	'svelte/*',
+	'@sveltejs/*',
+	'kysely',
+	'better-sqlite3',
+	'$app/*',
+	'$env/*',
+	'mqtt',
+	'aedes'
+];
 const above = (...layers) => layers.flatMap((layer) => [`$lib/${layer}`, `$lib/${layer}/*`, `**/lib/${layer}/*`]);
 
 export default ts.config(

@@ -19,7 +19,7 @@ export class StuckScript {
 		readonly vehicle: Vehicle,
 		readonly floor: FloorWorld
 	) {
-		vehicle.holdTasks = true;
+		vehicle.errands.hold = true;
 		vehicle.place(START.x, START.y, 0);
 		const { life } = floor;
 		// Two loose rings with a lane along the robot's way, 2 m and 3 m out from where it will be when they close.
@@ -40,7 +40,7 @@ export class StuckScript {
 	step(time: number): void {
 		const { vehicle, floor } = this;
 		if (!this.#sent) {
-			this.#sent = vehicle.assign(GOAL, vehicle.floor, time);
+			this.#sent = vehicle.errands.assign(GOAL, vehicle.floor, time);
 			return;
 		}
 		if (!this.#closed && time >= CLOSES_AT) {
@@ -49,7 +49,7 @@ export class StuckScript {
 			this.#closed = true;
 		}
 		if (!this.#opened && time > CLOSES_AT + STAYS + 30) {
-			vehicle.holdTasks = false;
+			vehicle.errands.hold = false;
 			this.#opened = true;
 		}
 	}

@@ -132,7 +132,7 @@ export class World {
 			const dock = docks[vehicle.index % docks.length];
 			const spot = vehicle.index % 2 && goals.length ? this.#freeGoal(vehicle) : (dock ?? goals[0] ?? { x: 0, y: 0 });
 			vehicle.place(spot.x, spot.y, -Math.PI / 2);
-			vehicle.until = this.#random.between(0.5, 12);
+			vehicle.errands.until = this.#random.between(0.5, 12);
 		}
 	}
 
@@ -143,7 +143,7 @@ export class World {
 			const taken = this.#vehicles.some((o) => o.floor === vehicle.floor && Math.hypot(o.x - goal.x, o.y - goal.y) < 2);
 			if (!taken) return goal;
 		}
-		return vehicle.home;
+		return vehicle.errands.home;
 	}
 
 	#startFaults(dt: number): void {
@@ -152,7 +152,7 @@ export class World {
 			if (vehicle.phase !== 'driving' || vehicle.paused) continue;
 			const fault = vehicle.faults.draw(dt, time);
 			if (fault?.name === 'onlookers') this.#gather(vehicle, fault.seconds);
-			if (this.#firstOnlookers === null || time < this.#firstOnlookers || vehicle.legTime(time) < 3) continue;
+			if (this.#firstOnlookers === null || time < this.#firstOnlookers || vehicle.errands.legTime(time) < 3) continue;
 			if (vehicle.robot.planner === 'decoupled' && this.#gather(vehicle, 60)) this.#firstOnlookers = null;
 		}
 	}

@@ -39,6 +39,8 @@ const COS_SIGHT = Math.cos((100 * Math.PI) / 180);
 const TIME_GAP = 0.45;
 const BODY_LENGTH = 0.34;
 
+/** m/s²; weaker forces are left out. */
+const FAINT = 0.05;
 /** m; people farther away do not matter. */
 const REACH = 2.5;
 /** m/s² and m/s; nobody accelerates or walks beyond these. */
@@ -165,11 +167,11 @@ export class Walking {
 					const ky = VELOCITY_WEIGHT * (vy - people.vy[j]!) + ey;
 					const k = Math.sqrt(kx * kx + ky * ky) || 1e-6;
 					const reach = RANGE_PER_SPEED * k;
-					if (d > 5 * reach) continue;
+					const fade = weight * STRENGTH * Math.exp(-d / reach);
+					if (fade < FAINT) continue;
 					const tx = kx / k;
 					const ty = ky / k;
 					const angle = Math.atan2(tx * ey - ty * ex, tx * ex + ty * ey) + reach * SIDE_BIAS;
-					const fade = weight * STRENGTH * Math.exp(-d / reach);
 					const back = fade * Math.exp(-((ANGLE_AHEAD * reach * angle) ** 2));
 					const turn = fade * Math.sign(angle) * Math.exp(-((ANGLE_SIDE * reach * angle) ** 2));
 					forceX -= back * tx - turn * ty;

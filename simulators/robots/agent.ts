@@ -71,11 +71,11 @@ export class Agent {
 			this.#look(floor, time);
 		}
 		this.#tellState(time);
-		for (const answer of this.vehicle.answers.splice(0)) this.#send('answer', answer satisfies Answer, time);
+		for (const answer of this.vehicle.errands.answers.splice(0)) this.#send('answer', answer satisfies Answer, time);
 	}
 
 	receive(command: Command, time: number): void {
-		if (this.radio) this.vehicle.obey(command, time, this.link.stamp(time));
+		if (this.radio) this.vehicle.errands.obey(command, time, this.link.stamp(time));
 	}
 
 	/** Says goodbye, as a robot that is switched off by plan does. */
@@ -121,12 +121,12 @@ export class Agent {
 	}
 
 	#tellState(time: number): void {
-		const state = stateMessage(this.vehicle, time, 0, 0);
-		const said = `${state.task?.id ?? ''}/${state.mode}/${state.paused}/${state.estop}/${state.charging}/${state.localized}/${state.errors.length}`;
+		const { vehicle } = this;
+		const said = `${vehicle.task?.id}/${vehicle.faultNow(time)}/${vehicle.isManual(time)}/${vehicle.paused}/${vehicle.phase}`;
 		if (said === this.#lastState && time < this.#nextState) return;
 		this.#lastState = said;
 		this.#nextState = time + STATE_EVERY;
-		this.#send('state', { ...state, t: this.link.stamp(time), seq: this.link.nextSequence('state') }, time);
+		this.#send('state', stateMessage(vehicle, time, this.link.stamp(time), this.link.nextSequence('state')), time);
 	}
 
 	/** Keeps up with radio holes and restarts; the broker speaks up when the robot has been quiet for long. */

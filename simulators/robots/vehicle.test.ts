@@ -21,7 +21,7 @@ function lonely(planner: Planner = 'decoupled', yielding = 0, seed = 1) {
 		epoch: 1_700_000_000
 	});
 	const { vehicle } = world.agents[0]!;
-	vehicle.holdTasks = true;
+	vehicle.errands.hold = true;
 	return { world, vehicle, floor: world.floors[0]! };
 }
 
@@ -36,7 +36,7 @@ describe('driving', () => {
 	it('gets through the door to its goal on empty floor, at about its own speed', () => {
 		const { world, vehicle } = lonely();
 		vehicle.place(3, 10, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 45);
 		expect(Math.hypot(vehicle.x - goal.x, vehicle.y - goal.y)).toBeLessThan(0.5);
 		expect(world.truth.halts).toEqual([]);
@@ -45,7 +45,7 @@ describe('driving', () => {
 	it('goes round a standing person instead of asking for everything: people do not do all the avoiding', () => {
 		const { world, vehicle, floor } = lonely('decoupled', 0);
 		vehicle.place(18, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		const slot = floor.life.place(22, 6, Infinity);
 		let widest = 0;
 		for (let i = 0; i < 250; i++) {
@@ -60,14 +60,14 @@ describe('driving', () => {
 	it('freezes in a ring of people who do not move, and the truth says so', () => {
 		const { world, vehicle, floor } = lonely('decoupled', 0);
 		vehicle.place(20, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		for (let k = 0; k < 9; k++) {
 			const angle = (2 * Math.PI * k) / 9;
 			floor.life.place(23 + 1.1 * Math.cos(angle), 6 + 1.1 * Math.sin(angle), Infinity);
 			floor.life.place(23 + 1.9 * Math.cos(angle + 0.3), 6 + 1.9 * Math.sin(angle + 0.3), Infinity);
 		}
 		vehicle.place(23, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 20);
 		expect(world.truth.halts).toHaveLength(1);
 		expect(world.truth.halts[0]).toMatchObject({ kind: 'freeze', cause: 'people', end: null, wouldYield: 0 });
@@ -78,7 +78,7 @@ describe('driving', () => {
 	it('stalls before a thing put down in its way, and goes on when it is gone', () => {
 		const { world, vehicle } = lonely();
 		vehicle.place(18, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 3);
 		vehicle.faults.start('obstruction', world.time, 15);
 		run(world, 30);
@@ -92,9 +92,9 @@ describe('driving', () => {
 	it('stops by plan when paused: no halt', () => {
 		const { world, vehicle } = lonely();
 		vehicle.place(18, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 2);
-		vehicle.paused = true;
+		vehicle.errands.paused = true;
 		run(world, 20);
 		expect(vehicle.speed).toBe(0);
 		expect(world.truth.halts).toEqual([]);
@@ -110,7 +110,7 @@ describe('yielding', () => {
 			const random = createRandom(`crowd/${seed}`);
 			for (let i = 0; i < 110; i++) floor.life.place(random.between(18.5, 26), random.between(0.5, 11.5), Infinity);
 			vehicle.place(16.5, 6, 0);
-			vehicle.assign(goal, 0, 0);
+			vehicle.errands.assign(goal, 0, 0);
 			const start = vehicle.remaining()!;
 			run(world, 60);
 			total += start - (vehicle.remaining() ?? 0);
@@ -131,7 +131,7 @@ describe('yielding', () => {
 			const angle = (2 * Math.PI * k) / 9;
 			floor.life.place(23 + 0.8 * Math.cos(angle), 6 + 0.8 * Math.sin(angle), Infinity);
 		}
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 8);
 		expect(vehicle.wantX).toBe(0);
 		expect(world.truth.halts[0]).toMatchObject({ kind: 'freeze', wouldYield: 1 });
@@ -156,7 +156,7 @@ describe('commands', () => {
 	it('are seen and done: pause stops, resume goes on', () => {
 		const { world, vehicle } = lonely();
 		vehicle.place(18, 6, 0);
-		vehicle.assign(goal, 0, 0);
+		vehicle.errands.assign(goal, 0, 0);
 		run(world, 2);
 		expect(answersTo(world, command('pause')).map(({ status }) => status)).toEqual(['seen', 'done']);
 		run(world, 3);

@@ -1,40 +1,22 @@
-/** One simulated robot: tasks, driving, faults and what its operator asks of it. */
+/** One simulated robot as it drives: plans, moves, is held up, and fails. What it drives for is in its errands. */
 
-import type { Point } from '../../src/lib/domain/geometry/types.ts';
-import type { Answer, Command } from '../../src/lib/contracts/mqtt.ts';
 import type { FloorWorld } from '../core/floor-world.ts';
 import { MapFrame } from '../core/floor-world.ts';
-import { distanceAt, findRoute, type DistanceField } from '../core/nav-grid.ts';
+import { distanceAt } from '../core/nav-grid.ts';
 import type { Random } from '../core/random.ts';
 import type { RobotBody } from '../crowd/walking.ts';
-import type { FleetRobot, RobotGoal } from '../venue/model.ts';
+import type { FleetRobot } from '../venue/model.ts';
+import { Errands, type DriveTask, type Phase } from './errands.ts';
 import type { Faults } from './faults.ts';
+import { lookAhead } from './route-following.ts';
 import { COUNTED_ON, OBSTACLE_SIZE, planVelocity, wrap, type Plan } from './planner.ts';
-
-export interface DriveTask {
-	readonly id: string;
-	readonly goal: Point;
-	readonly goalKey: string;
-	readonly route: readonly Point[];
-	readonly field: DistanceField;
-	/** Reached floor's index when this leg ends at the lift; null otherwise */
-	readonly rideTo: number | null;
-	/** Doors still to be waited at */
-	readonly doors: RobotGoal[];
-}
-
-export type Phase = 'idle' | 'driving' | 'waiting' | 'arrived' | 'charging';
 
 const MAX_TURN = 1.6;
 const ACCELERATION = 1;
 const BRAKING = 1.8;
-const LOOK_AHEAD = 1.6;
-/** s a robot stands in front of people before it gives the task up */
-const PATIENCE = 100;
 const PERSON_RADIUS = 0.22;
-/** Share of the battery per s of driving and of charging. */
+/** Share of the battery per s of driving. */
 const DRAIN = 1 / (5 * 3600);
-const CHARGE = 1 / 1800;
 
 export class Vehicle implements RobotBody {
 	x = 0;
@@ -45,22 +27,16 @@ export class Vehicle implements RobotBody {
 	vy = 0;
 	wantX = 0;
 	wantY = 0;
-	phase: Phase = 'idle';
-	task: DriveTask | null = null;
-	/** s; when the present phase ends, where it ends by the clock */
-	until = 0;
-	paused = false;
 	battery: number;
 	travelled = 0;
 	/** What last kept it from moving. */
 	cause = 'none';
 	floor: number;
 	frame: MapFrame;
-	/** Scripted scenarios take the choice of goals over. */
-	holdTasks = false;
+	readonly errands: Errands;
 	readonly radius: number;
-	readonly answers: Answer[] = [];
-	#blockedSince = -1;
+	/** s since when its planner has found no way; −1 while there is one */
+	blockedSince = -1;
 	#ditherUntil = -1;
 	#ditherTurn = 0;
 	/** s; when nothing but a person or a robot at the bumper began to hold it, −1 while free */
@@ -68,10 +44,7 @@ export class Vehicle implements RobotBody {
 	#pinnedBy: 'people' | 'robots' = 'people';
 	#backOffUntil = -1;
 	#backOffHeading = 0;
-	#others: readonly Vehicle[] = [];
-	#taskNumber = 0;
-	#legStart = 0;
-	#holdCommand: Command | null = null;
+	others: readonly Vehicle[] = [];
 	#obstacles = new Float64Array(64 * OBSTACLE_SIZE);
 	readonly #plan: Plan = { speed: 0, heading: 0, blockedBy: null };
 
@@ -86,16 +59,37 @@ export class Vehicle implements RobotBody {
 		this.floor = robot.floor;
 		this.battery = random.between(0.35, 1);
 		this.frame = this.#frameOn(robot.floor);
+		this.errands = new Errands(this, random);
 	}
 
-	get home(): RobotGoal {
-		const { docks } = this.floors[this.robot.floor]!.model;
-		return docks[this.index % docks.length]!;
+	get task(): DriveTask | null {
+		return this.errands.task;
+	}
+
+	get phase(): Phase {
+		return this.errands.phase;
+	}
+
+	get paused(): boolean {
+		return this.errands.paused;
+	}
+
+	/** s since when people, robots or walls have kept it from going on; −1 while it can go. */
+	get heldSince(): number {
+		return Math.max(this.blockedSince, this.#pinnedSince);
 	}
 
 	/** Puts the robot down somewhere; drops its task. */
 	place(x: number, y: number, heading: number): void {
-		Object.assign(this, { x, y, heading, speed: 0, vx: 0, vy: 0, task: null, phase: 'idle' });
+		Object.assign(this, { x, y, heading, speed: 0, vx: 0, vy: 0 });
+		this.errands.drop();
+	}
+
+	/** Puts the robot down on a floor, for example out of the lift. */
+	moveTo(floor: number, x: number, y: number, heading: number): void {
+		this.floor = floor;
+		this.frame = this.#frameOn(floor);
+		this.place(x, y, heading);
 	}
 
 	/** m of the shortest true way left; null without a task. */
@@ -120,33 +114,9 @@ export class Vehicle implements RobotBody {
 		return this.paused || this.phase !== 'driving' || this.isManual(time);
 	}
 
-	assign(goal: RobotGoal, floor: number, time: number): boolean {
-		const here = this.floors[this.floor]!;
-		const ride = floor !== this.floor;
-		const target = ride ? here.model.lift : goal;
-		if (!target) return false;
-		const field = here.fieldTo(target);
-		const route = findRoute(here.driveGrid, field, this, target);
-		if (!route) return false;
-		this.#taskNumber++;
-		this.#legStart = time;
-		this.#blockedSince = -1;
-		this.phase = 'driving';
-		this.task = {
-			id: `${this.robot.key}-${this.#taskNumber}`,
-			goal: { x: target.x, y: target.y },
-			goalKey: goal.key,
-			route,
-			field,
-			rideTo: ride ? floor : null,
-			doors: here.model.doors.filter((door) => passes(route, door))
-		};
-		return true;
-	}
-
 	step(dt: number, time: number, others: readonly Vehicle[], plansNow: boolean, liftWorks: boolean): void {
-		this.#others = others;
-		this.#runPhase(dt, time, liftWorks);
+		this.others = others;
+		this.errands.step(dt, time, liftWorks);
 		const canDrive =
 			this.phase === 'driving' &&
 			this.task !== null &&
@@ -163,89 +133,6 @@ export class Vehicle implements RobotBody {
 			this.#plan.speed = 0;
 		}
 		this.#drive(dt, time, targetSpeed, canDrive);
-	}
-
-	#runPhase(dt: number, time: number, liftWorks: boolean): void {
-		const { task } = this;
-		if (this.phase === 'charging') {
-			this.battery = Math.min(1, this.battery + CHARGE * dt);
-			if (this.battery > 0.85) this.#rest(time, 0);
-		} else if (this.phase === 'idle' && time >= this.until && !this.holdTasks && !this.paused) this.#nextTask(time);
-		else if (this.phase === 'waiting' && time >= this.until && task) {
-			if (task.rideTo === null) this.phase = 'driving';
-			else if (liftWorks) this.#ride(task.rideTo, time);
-		} else if (this.phase === 'arrived' && time >= this.until) this.#finish(time);
-		else if (this.phase === 'driving' && task) this.#checkArrival(task, time);
-	}
-
-	#checkArrival(task: DriveTask, time: number): void {
-		const away = Math.hypot(task.goal.x - this.x, task.goal.y - this.y);
-		const held = Math.max(this.#blockedSince, this.#pinnedSince);
-		const longWait = held >= 0 && time - held > 1;
-		if (away < 0.4 || (away < 1.9 && longWait)) {
-			this.phase = task.rideTo === null ? 'arrived' : 'waiting';
-			this.until = time + (task.rideTo === null ? this.random.between(3, 15) : this.random.between(10, 25));
-			return;
-		}
-		const door = task.doors.find(({ x, y }) => Math.hypot(x - this.x, y - this.y) < 1.3);
-		if (door) {
-			task.doors.splice(task.doors.indexOf(door), 1);
-			this.phase = 'waiting';
-			this.until = time + this.random.between(2, 5);
-		} else if (!this.holdTasks && this.#blockedSince >= 0 && time - this.#blockedSince > PATIENCE) this.#rest(time, 15);
-	}
-
-	#finish(time: number): void {
-		const atHome = this.task?.goalKey === this.home.key;
-		if (this.#holdCommand) {
-			this.answers.push({ id: this.#holdCommand.id, status: 'done' });
-			this.#holdCommand = null;
-			this.paused = true;
-		}
-		if (atHome && this.battery < 0.8) {
-			this.task = null;
-			this.phase = 'charging';
-		} else this.#rest(time, atHome ? 60 : 12);
-	}
-
-	#rest(time: number, most: number): void {
-		this.task = null;
-		this.phase = 'idle';
-		this.until = time + this.random.between(0, most);
-		this.#blockedSince = -1;
-	}
-
-	#nextTask(time: number): void {
-		const { random } = this;
-		const here = this.floors[this.floor]!.model;
-		const low = this.battery < 0.25;
-		if (low || (this.task === null && random.chance(0.04))) {
-			if (this.assign(this.home, this.robot.floor, time)) return;
-		}
-		const rides = this.robot.model.letter === 'P' && this.floors.length > 1 && here.lift && random.chance(0.12);
-		const floor = rides ? (this.floor + 1) % this.floors.length : this.floor;
-		const goals = this.floors[floor]!.model.goals;
-		for (let tries = 0; tries < 12; tries++) {
-			const goal = random.pick(goals);
-			if (floor === this.floor && Math.hypot(goal.x - this.x, goal.y - this.y) < 5) continue;
-			// The dispatcher sends no two robots to one place.
-			if (this.#others.some((other) => other !== this && other.task?.goalKey === goal.key)) continue;
-			if (this.assign(goal, floor, time)) return;
-		}
-		this.until = time + 5;
-	}
-
-	/** Out of the lift on the other floor, on with the same errand. */
-	#ride(floor: number, time: number): void {
-		const task = this.task!;
-		const lift = this.floors[floor]!.model.lift!;
-		this.floor = floor;
-		this.frame = this.#frameOn(floor);
-		this.place(lift.x, lift.y, -Math.PI / 2);
-		const goal = [...this.floors[floor]!.model.goals, ...this.floors[floor]!.model.docks].find(
-			({ key }) => key === task.goalKey
-		);
-		if (!goal || !this.assign(goal, floor, time)) this.#rest(time, 5);
 	}
 
 	#frameOn(floor: number): MapFrame {
@@ -306,7 +193,7 @@ export class Vehicle implements RobotBody {
 
 	/** Backs off and tries again: from one or two people after a while; of two robots the one later in the fleet does. */
 	#makeWay(time: number, direction: number): void {
-		const since = Math.max(this.#blockedSince, this.#pinnedSince);
+		const since = this.heldSince;
 		if (since < 0 || time - since < 2 || time < this.#backOffUntil + 4) return;
 		if (this.cause === 'people') {
 			let near = 0;
@@ -315,7 +202,7 @@ export class Vehicle implements RobotBody {
 		} else if (this.cause !== 'robots') return;
 		const first =
 			this.cause === 'people' ||
-			this.#others.some(
+			this.others.some(
 				(other) =>
 					other.floor === this.floor && other.index < this.index && Math.hypot(other.x - this.x, other.y - this.y) < 2.5
 			);
@@ -328,14 +215,14 @@ export class Vehicle implements RobotBody {
 
 	#noteBlocked(time: number, blocked: boolean): void {
 		if (!blocked) {
-			if (this.#blockedSince >= 0 && this.speed > 0.3) this.#blockedSince = -1;
+			if (this.blockedSince >= 0 && this.speed > 0.3) this.blockedSince = -1;
 			return;
 		}
-		if (this.#blockedSince < 0) this.#blockedSince = time;
-		const waited = time - this.#blockedSince;
+		if (this.blockedSince < 0) this.blockedSince = time;
+		const waited = time - this.blockedSince;
 		if (
 			this.robot.planner === 'decoupled' &&
-			!this.holdTasks &&
+			!this.errands.hold &&
 			waited > 5 &&
 			this.#ditherUntil < time - 20 &&
 			this.random.chance(0.01)
@@ -373,7 +260,7 @@ export class Vehicle implements RobotBody {
 			if (count >= 64) return;
 			out.set([dx, dy, vx, vy, radius, flexibility, person], count++ * OBSTACLE_SIZE);
 		};
-		for (const other of this.#others) {
+		for (const other of this.others) {
 			if (other === this || other.floor !== this.floor) continue;
 			const dx = other.x - this.x;
 			const dy = other.y - this.y;
@@ -437,7 +324,7 @@ export class Vehicle implements RobotBody {
 			most = Math.min(most, stoppable(gap));
 			this.#pinnedBy = 'people';
 		});
-		for (const other of this.#others) {
+		for (const other of this.others) {
 			if (other === this || other.floor !== this.floor) continue;
 			const dx = other.x - this.x;
 			const dy = other.y - this.y;
@@ -448,93 +335,7 @@ export class Vehicle implements RobotBody {
 		}
 		return most;
 	}
-
-	/** Answers a command the way a well-behaved robot does. */
-	obey(command: Command, time: number, now: number): void {
-		if (command.expires_at < now) {
-			this.answers.push({ id: command.id, status: 'refused', text: 'The command had expired.' });
-			return;
-		}
-		this.answers.push({ id: command.id, status: 'seen' });
-		if (this.#holdCommand) {
-			this.answers.push({ id: this.#holdCommand.id, status: 'failed', text: 'Another command came first.' });
-			this.#holdCommand = null;
-		}
-		if (command.kind === 'pause') this.paused = true;
-		else if (command.kind === 'resume') this.paused = false;
-		else {
-			const x = Number(command.args?.x);
-			const y = Number(command.args?.y);
-			const spot = this.frame.toFloorPoint(x, y);
-			const goal = command.kind === 'return' ? this.home : { key: 'held-place', x: spot.x, y: spot.y };
-			const floor = command.kind === 'return' ? this.robot.floor : this.floor;
-			if (!Number.isFinite(goal.x + goal.y) || !this.assign(goal, floor, time)) {
-				this.answers.push({ id: command.id, status: 'refused', text: 'There is no way to that place.' });
-				return;
-			}
-			this.paused = false;
-			if (command.kind === 'hold_at') {
-				this.#holdCommand = command;
-				this.answers.push({ id: command.id, status: 'running' });
-				return;
-			}
-		}
-		this.answers.push({ id: command.id, status: 'done' });
-	}
-
-	/** s the present leg has taken. */
-	legTime(time: number): number {
-		return time - this.#legStart;
-	}
 }
 
 /** m/s from which a robot stops within a gap, with some to spare. */
 const stoppable = (gap: number): number => (gap <= 0 ? 0 : Math.sqrt(2 * BRAKING * 0.8 * gap) * 0.7);
-
-/** A point of the route about LOOK_AHEAD metres on; falls back along the route to one in plain view. */
-function lookAhead(route: readonly Point[], at: Point, grid: FloorWorld['driveGrid']): Point {
-	let best = 0;
-	let bestShare = 0;
-	let least = Infinity;
-	for (let i = 0; i + 1 < route.length; i++) {
-		const a = route[i]!;
-		const b = route[i + 1]!;
-		const dx = b.x - a.x;
-		const dy = b.y - a.y;
-		const length2 = dx * dx + dy * dy;
-		const share = length2 > 0 ? Math.max(0, Math.min(1, ((at.x - a.x) * dx + (at.y - a.y) * dy) / length2)) : 0;
-		const away = Math.hypot(a.x + share * dx - at.x, a.y + share * dy - at.y);
-		if (away < least) [least, best, bestShare] = [away, i, share];
-	}
-	let left = LOOK_AHEAD;
-	let share = bestShare;
-	let target: Point = route[route.length - 1]!;
-	for (let i = best; i + 1 < route.length; i++) {
-		const a = route[i]!;
-		const b = route[i + 1]!;
-		const length = Math.hypot(b.x - a.x, b.y - a.y);
-		if ((1 - share) * length >= left) {
-			const s = share + left / length;
-			target = { x: a.x + s * (b.x - a.x), y: a.y + s * (b.y - a.y) };
-			break;
-		}
-		left -= (1 - share) * length;
-		share = 0;
-	}
-	if (grid.walls.isBlocked(at.x, at.y, target.x, target.y)) {
-		const a = route[best]!;
-		const b = route[Math.min(best + 1, route.length - 1)]!;
-		return least > 0.5 ? { x: a.x + bestShare * (b.x - a.x), y: a.y + bestShare * (b.y - a.y) } : b;
-	}
-	return target;
-}
-
-const passes = (route: readonly Point[], door: Point): boolean =>
-	route.some((a, i) => {
-		const b = route[i + 1];
-		if (!b) return false;
-		const dx = b.x - a.x;
-		const dy = b.y - a.y;
-		const share = Math.max(0, Math.min(1, ((door.x - a.x) * dx + (door.y - a.y) * dy) / (dx * dx + dy * dy || 1)));
-		return Math.hypot(a.x + share * dx - door.x, a.y + share * dy - door.y) < 1.3;
-	});

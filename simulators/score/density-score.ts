@@ -9,7 +9,7 @@ import type { Population } from '../crowd/population.ts';
 /** Lower ends of the bands of coverage. */
 export const COVERAGE_BANDS = [0.3, 0.6, 0.9] as const;
 
-export interface DensityFigures {
+interface DensityFigures {
 	readonly results: number;
 	/** (mean measured − mean true) / mean true, true of the whole zone; null when nobody was there, or nothing was measured */
 	readonly bias: number | null;

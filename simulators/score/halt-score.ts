@@ -29,7 +29,7 @@ export interface DetectedHalt {
 	readonly verdict: Verdict;
 }
 
-export interface Pair {
+interface Pair {
 	readonly truth: ExpectedHalt;
 	readonly found: DetectedHalt;
 }
@@ -43,7 +43,7 @@ export interface HaltMatches {
 }
 
 /** s by which the two onsets may differ. */
-export const ONSET_WITHIN_S = 5;
+const ONSET_WITHIN_S = 5;
 
 /**
  * One-to-one per robot, as many pairs as possible and then the least sum of onset differences. Halts that count are

@@ -8,9 +8,9 @@ import { computeOspa } from '../../src/lib/domain/tracking/ospa.ts';
 import type { Population } from '../crowd/population.ts';
 
 /** m within which a fused person can be a true one; also what OSPA charges for one too many or too few. */
-export const PERSON_WITHIN_M = 1;
+const PERSON_WITHIN_M = 1;
 
-export interface PersonFigures {
+interface PersonFigures {
 	/** Fused over true; null when nobody was there */
 	readonly ratio: number | null;
 	/** Shares of the true persons */

@@ -34,7 +34,7 @@ interface Picture {
 	readonly people: readonly (readonly RoomPerson[])[];
 }
 
-export interface TrueMoment {
+interface TrueMoment {
 	readonly alone: number;
 	readonly shared: number;
 	readonly verdict: Verdict;

@@ -6,6 +6,7 @@ import {
 	confirmedTracks,
 	startTracker,
 	stepTracker,
+	stepTrackerAll,
 	type PersonScan,
 	type TrackerState
 } from '../../src/lib/domain/tracking/person-tracks.ts';
@@ -35,11 +36,7 @@ export function trackingParts(): Part[] {
 	return [
 		{
 			name: 'fuse 50 robots × 20 persons',
-			ours: () =>
-				check(
-					scans.reduce((state, scan) => stepTracker(state, scan), before),
-					before
-				),
+			ours: () => check(stepTrackerAll(before, scans), before),
 			straightforward: () => fusePlainly(before, scans),
 			target_ms: 10
 		},

@@ -13,7 +13,8 @@ import { insertFloor } from '../../src/lib/server/repositories/floors.ts';
 import { readSettings } from '../../src/lib/server/settings.ts';
 import { startWorker } from '../../src/lib/server/threads/locate.ts';
 import { startThreads, type Threads } from '../../src/lib/server/threads/supervisor.ts';
-import { until } from '../support/brokers.ts';
+import { freePort, SERVICE, until } from '../support/brokers.ts';
+import { startBrokerThread } from '../support/brokers-own.ts';
 import { FLOOR, MODEL } from '../support/room-with-robot.ts';
 
 const VENUE = 'test';
@@ -39,8 +40,12 @@ beforeEach(async () => {
 	health = null;
 	alarms = [];
 	workers = new Map();
-	threads = await startThreads({
-		settings: readSettings({ DATABASE_PATH: path, MQTT_PORT: '0', LOG_LEVEL: 'silent' }),
+	threads = await start({ MQTT_PORT: '0' });
+});
+
+const start = (env: Record<string, string>) =>
+	startThreads({
+		settings: readSettings({ DATABASE_PATH: join(folder, 'desk.db'), LOG_LEVEL: 'silent', ...env }),
 		log: quiet,
 		onMessage(message) {
 			if (message.type === 'frame') frame = message.frame;
@@ -53,7 +58,6 @@ beforeEach(async () => {
 			return worker;
 		}
 	});
-});
 
 afterEach(async () => {
 	await robot?.endAsync(true);
@@ -165,4 +169,32 @@ it('hears the robots again after the broker died, on the same port', async () =>
 	await until(() => health?.broker === false, 'word that the broker is down');
 	await until(() => health?.broker === true && health.messages_per_s > 0, 'messages again');
 	expect(threads.brokerPort).toBe(port);
+});
+
+it('starts without a broker, says that nobody can be heard, raises one alarm for it, and goes on when the broker comes', async () => {
+	await threads.stop();
+	const port = await freePort();
+	threads = await start({
+		MQTT_URL: `mqtt://127.0.0.1:${port}`,
+		MQTT_USERNAME: SERVICE.username,
+		MQTT_PASSWORD: SERVICE.password
+	});
+	await until(() => health?.engine && !health.broker, 'word that there is no broker');
+	expect(health?.troubles.join(' ')).toMatch(/Robots cannot be heard/);
+	const alarm = await until(() => alarms.find(({ type }) => type === 'ingest'), 'the alarm about it');
+	expect(alarm).toMatchObject({ state: 'unacknowledged', robots: [] });
+	const broker = await startBrokerThread({ database_path: join(folder, 'desk.db'), port });
+	try {
+		await until(() => health?.broker === true, 'the broker to be found');
+		await until(() => alarms.at(-1)?.state === 'returned', 'the alarm to return');
+		expect(alarms.filter(({ type }) => type === 'ingest').map(({ id }) => id)).toEqual([alarm.id, alarm.id]);
+	} finally {
+		await threads.stop();
+		await broker.stop();
+	}
+});
+
+it('says in one sentence that the broker’s port is taken', async () => {
+	const taken = String(threads.brokerPort);
+	await expect(start({ MQTT_PORT: taken })).rejects.toThrow(new RegExp(`port ${taken}`, 'i'));
 });

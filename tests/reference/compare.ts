@@ -8,7 +8,9 @@ export interface Tolerance {
 /** What differs, one line each with its path; empty when everything expected is there and near enough. Extra keys in `got` do not matter. */
 export function differences(got: unknown, expected: unknown, tolerance: Tolerance, path = ''): string[] {
 	if (typeof expected === 'number' || expected === 'Infinity' || expected === '-Infinity') {
-		return sameNumber(got, Number(expected), tolerance) ? [] : [`${path || 'value'} is ${show(got)}, expected ${expected}`];
+		return sameNumber(got, Number(expected), tolerance)
+			? []
+			: [`${path || 'value'} is ${show(got)}, expected ${expected}`];
 	}
 	if (Array.isArray(expected)) {
 		if (!Array.isArray(got) || got.length !== expected.length) {

@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { expect, it } from 'vitest';
-import { transformOf, viewOf } from './camera.ts';
+import { between, transformOf, viewOf } from './camera.ts';
 import { screenX, screenY } from './projection.ts';
 
 const metre = fc.double({ min: -500, max: 500, noNaN: true });
@@ -28,6 +28,16 @@ it('a view survives the way there and back', () => {
 			expect(back.centre.x).toBeCloseTo(view.centre.x, 6);
 			expect(back.centre.y).toBeCloseTo(view.centre.y, 6);
 			expect(back.pxPerM).toBe(view.pxPerM);
+		})
+	);
+});
+
+it('a glide starts where the view is and ends where it should', () => {
+	fc.assert(
+		fc.property(anyView, anyView, (from, to) => {
+			expect(between(from, to, 0).centre.y).toBeCloseTo(from.centre.y, 6);
+			expect(between(from, to, 1).pxPerM).toBeCloseTo(to.pxPerM, 6);
+			expect(between(from, to, 1).centre.x).toBeCloseTo(to.centre.x, 6);
 		})
 	);
 });

@@ -46,29 +46,64 @@ export function openCamera(
 	target.call(behaviour);
 	target.call(behaviour.transform, transformOf(view));
 
-	const glide = () => target.transition().duration(still() ? 0 : GLIDE_MS);
+	let request = 0;
+	const jump = (next: View) => {
+		cancelAnimationFrame(request);
+		target.call(behaviour.transform, transformOf(next));
+	};
+	const glide = (to: View) => {
+		if (still()) return jump(to);
+		cancelAnimationFrame(request);
+		const from = view;
+		const startMs = performance.now();
+		const step = () => {
+			const t = Math.min(1, (performance.now() - startMs) / GLIDE_MS);
+			target.call(behaviour.transform, transformOf(between(from, to, t)));
+			if (t < 1) request = requestAnimationFrame(step);
+		};
+		request = requestAnimationFrame(step);
+	};
+	// A hand on the plan ends any glide.
+	surface.addEventListener('pointerdown', () => cancelAnimationFrame(request));
+	surface.addEventListener('wheel', () => cancelAnimationFrame(request), { passive: true });
+
 	return {
 		get view() {
 			return view;
 		},
 		goTo(next, animate) {
 			view = { ...view, width: next.width, height: next.height };
-			if (animate && !still()) glide().call(behaviour.transform, transformOf(next));
-			else target.interrupt().call(behaviour.transform, transformOf(next));
+			if (animate) glide(next);
+			else jump(next);
 		},
 		pan(dx, dy) {
-			glide().call(behaviour.translateBy, -dx / view.pxPerM, -dy / view.pxPerM);
+			const { x, y } = view.centre;
+			glide({ ...view, centre: { x: x + dx / view.pxPerM, y: y - dy / view.pxPerM } });
 		},
 		zoom(factor) {
-			glide().call(behaviour.scaleBy, factor);
+			const [least, most] = SCALES;
+			glide({ ...view, pxPerM: Math.min(most, Math.max(least, view.pxPerM * factor)) });
 		},
 		resize(width, height) {
 			view = { ...view, width, height };
-			target.interrupt().call(behaviour.transform, transformOf(view));
+			jump(view);
 		},
 		close() {
-			target.interrupt().on('.zoom', null);
+			cancelAnimationFrame(request);
+			target.on('.zoom', null);
 		}
+	};
+}
+
+/** A view on the way from one to another; t from 0 to 1. The scale goes by equal factors. */
+export function between(from: View, to: View, t: number): View {
+	return {
+		...to,
+		centre: {
+			x: from.centre.x + (to.centre.x - from.centre.x) * t,
+			y: from.centre.y + (to.centre.y - from.centre.y) * t
+		},
+		pxPerM: from.pxPerM * (to.pxPerM / from.pxPerM) ** t
 	};
 }
 

@@ -22,11 +22,12 @@ import { isPrivate, zoneAt, type FloorModel } from './floor-model.ts';
 import type { Frame, PersonPoint, RobotPicture } from './frame.ts';
 import { hear } from './hear.ts';
 import { conditionOf, judge, sampleOf } from './judge.ts';
-import { lookAround, type Surroundings } from './look-around.ts';
+import { lookAround, placesOf, type Surroundings } from './look-around.ts';
 import { markSeen, nothingSeen, type SeenAt, type View } from './observed.ts';
 import type { Observation } from './observation.ts';
 import { latestPose, startRobotView, withMoment, type OpenHalt, type RobotView } from './robot-view.ts';
 import type { EngineRules } from './rules.ts';
+import { isTurn } from './turn.ts';
 import {
 	addDensity,
 	addDrives,
@@ -122,6 +123,7 @@ export function stepFloor(
 	const learned = currentFlexibility(flexibility, rules.flexibility);
 	const around: Surroundings = {
 		persons,
+		places: placesOf(persons),
 		points: density.points,
 		observed: density.observed,
 		flexibility: learned.value
@@ -220,8 +222,8 @@ function personPoints(model: FloorModel, tracker: TrackerState, rules: EngineRul
 const SEEN_NOW_S = 1;
 
 function lookIfDue({ model, rules }: FloorContext, view: RobotView, around: Surroundings, now: number): RobotView {
-	const last = view.moments.at(-1);
-	if (last && now - last.time < rules.room.everyS - 1e-6) return view;
+	const lastAt = view.moments.at(-1)?.time ?? -Infinity;
+	if (!isTurn(view.robot.key, lastAt, now, rules.room.everyS)) return view;
 	const moment = lookAround(model, rules, view, around, now);
 	return moment ? withMoment(view, moment) : view;
 }

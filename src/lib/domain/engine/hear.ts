@@ -10,6 +10,7 @@ import { isInView, type View } from './observed.ts';
 import type { PeopleObservation, PoseObservation, RobotObservation, StateObservation } from './observation.ts';
 import { latestPose, poseAt, withPose, type FloorTask, type RobotView } from './robot-view.ts';
 import type { EngineRules } from './rules.ts';
+import { isTurn } from './turn.ts';
 
 export interface Heard {
 	readonly view: RobotView;
@@ -137,7 +138,7 @@ function hearPeople(
 		sees: (x, y) => isInView(model, look, x, y),
 		reach: { x: look.x, y: look.y, radius: look.range }
 	};
-	const due = time - view.markedAt >= LOOK_EVERY_S;
+	const due = isTurn(view.robot.key, view.markedAt, time, LOOK_EVERY_S);
 	return { view: due ? { ...view, markedAt: time } : view, scan, look: due ? look : null };
 }
 

@@ -13,6 +13,8 @@ const LOOK_AHEAD_M = 1.5;
 
 export interface Surroundings {
 	readonly persons: readonly PersonPoint[];
+	/** 2n, x then y, of `persons` */
+	readonly places: Float64Array;
 	/** 2n, x then y, of the persons on observed floor */
 	readonly points: Float64Array;
 	readonly observed: Uint8Array;
@@ -25,7 +27,7 @@ export function lookAround(
 	model: FloorModel,
 	rules: EngineRules,
 	view: RobotView,
-	{ persons, points, observed, flexibility }: Surroundings,
+	{ persons, places, points, observed, flexibility }: Surroundings,
 	now: number
 ): Moment | null {
 	const pose = latestPose(view);
@@ -44,12 +46,17 @@ export function lookAround(
 	);
 	const reach = maxSpeed * roomRule.horizonS;
 	const observedShare = computeObservedShare(model, observed, x, y, reach);
+	const limit = reach + PERSON_SPEED * roomRule.horizonS;
+	const near: RoomPerson[] = [];
 	let within2m = 0;
 	let nearest2 = Infinity;
-	for (const person of persons) {
-		const distance2 = (person.x - x) * (person.x - x) + (person.y - y) * (person.y - y);
-		if (distance2 <= 4) within2m += 1;
+	for (let i = 0; i < persons.length; i++) {
+		const dx = places[2 * i]! - x;
+		const dy = places[2 * i + 1]! - y;
+		const distance2 = dx * dx + dy * dy;
 		if (distance2 < nearest2) nearest2 = distance2;
+		if (distance2 <= 4) within2m += 1;
+		if (distance2 <= limit * limit) near.push(roomPerson(persons[i]!, roomRule.personRadiusM, flexibility));
 	}
 	const base = {
 		time: now,
@@ -72,7 +79,7 @@ export function lookAround(
 		direction,
 		horizon: roomRule.horizonS,
 		sector: roomRule.sectorRad,
-		persons: nearPersons(persons, x, y, reach, rules, flexibility),
+		persons: near,
 		walls: model.solid.near(x, y, reach + radius)
 	};
 	const { alone, shared } = computeRooms(query);
@@ -95,19 +102,21 @@ export function lookAround(
 /** m/s; the fastest a person is expected to come towards a robot, so that who can matter is not left out. */
 const PERSON_SPEED = 2;
 
-function nearPersons(
-	persons: readonly PersonPoint[],
-	x: number,
-	y: number,
-	reach: number,
-	{ room }: EngineRules,
-	flexibility: number
-): RoomPerson[] {
-	const limit = reach + PERSON_SPEED * room.horizonS;
-	const near: RoomPerson[] = [];
-	for (const { x: px, y: py, vx, vy } of persons) {
-		if ((px - x) * (px - x) + (py - y) * (py - y) > limit * limit) continue;
-		near.push({ x: px, y: py, vx, vy, radius: room.personRadiusM, flexibility });
-	}
-	return near;
+const roomPerson = ({ x, y, vx, vy }: PersonPoint, radius: number, flexibility: number): RoomPerson => ({
+	x,
+	y,
+	vx,
+	vy,
+	radius,
+	flexibility
+});
+
+/** Where the persons are, for `Surroundings`. */
+export function placesOf(persons: readonly PersonPoint[]): Float64Array {
+	const places = new Float64Array(2 * persons.length);
+	persons.forEach(({ x, y }, i) => {
+		places[2 * i] = x;
+		places[2 * i + 1] = y;
+	});
+	return places;
 }

@@ -1,7 +1,7 @@
 /** Which cells of the floor somebody's sensor saw, and when last. */
 
 import { createStarTester, computeVisibleRing } from '../geometry/visibility.ts';
-import { isInsideRing } from '../geometry/polygon.ts';
+import { distanceToSegment, isInsideRing } from '../geometry/polygon.ts';
 import type { Ring } from '../geometry/types.ts';
 import type { FloorModel } from './floor-model.ts';
 
@@ -35,7 +35,11 @@ export function markSeen(model: FloorModel, seenAt: SeenAt, views: readonly View
 function markOne(model: FloorModel, seenAt: SeenAt, view: View): void {
 	const { grid, sight, privateCell } = model;
 	const { x, y, range, fieldOfView, blocked, time } = view;
-	const sees = createStarTester(computeVisibleRing(sight, x, y, range, fieldOfView), x, y);
+	const ring = computeVisibleRing(sight, x, y, range, fieldOfView);
+	const sees = createStarTester(ring, x, y);
+	// Most cells are nearer than anything that ends the view, or beyond the range; only those between need a close look.
+	const clear2 = fieldOfView === null ? clearDistance(ring, x, y) ** 2 * (1 - 1e-9) : 0;
+	const range2 = range * range * (1 + 1e-9);
 	const fromCol = Math.max(0, Math.floor((x - range - grid.x0) / grid.cell));
 	const toCol = Math.min(grid.cols - 1, Math.floor((x + range - grid.x0) / grid.cell));
 	const fromRow = Math.max(0, Math.floor((y - range - grid.y0) / grid.cell));
@@ -45,11 +49,23 @@ function markOne(model: FloorModel, seenAt: SeenAt, view: View): void {
 			if (grid.area[index] === 0 || privateCell[index] === 1 || seenAt[index]! >= time) continue;
 			const cellX = grid.sampleX[index]!;
 			const cellY = grid.sampleY[index]!;
-			if (!sees(cellX, cellY)) continue;
+			const away2 = (cellX - x) * (cellX - x) + (cellY - y) * (cellY - y);
+			if (away2 > range2 || (away2 >= clear2 && !sees(cellX, cellY))) continue;
 			if (blocked && isInsideRing(blocked, cellX, cellY)) continue;
 			seenAt[index] = time;
 		}
 	}
+}
+
+/** m from a sensor that sees all round to the nearest place where its view ends; 0 when it sees nothing. */
+function clearDistance(ring: Ring, x: number, y: number): number {
+	let least = Infinity;
+	for (let i = 0; i < ring.length; i++) {
+		const [ax, ay] = ring[i]!;
+		const [bx, by] = ring[(i + 1) % ring.length]!;
+		least = Math.min(least, distanceToSegment(x, y, { ax, ay, bx, by }));
+	}
+	return least === Infinity ? 0 : least;
 }
 
 /** 1 for each cell seen within the window before `now`, else 0. */

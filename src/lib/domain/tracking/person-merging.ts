@@ -103,22 +103,24 @@ function nearestTwin(
 	const ownY = y[row]!;
 	const time = updatedAt[row]!;
 	let nearest = -1;
-	let nearestAt = rule.mergeWithin;
+	let nearest2 = rule.mergeWithin * rule.mergeWithin;
 	for (let k = 0; k < others.length; k += 1) {
 		const other = others[k]!;
 		if (Math.abs(x[other]! - ownX) > STRIDE || Math.abs(y[other]! - ownY) > STRIDE || alive[other] === 0) continue;
 		const dt = time - updatedAt[other]!;
 		const reach = reachAfter(dt);
-		const distance = Math.hypot(x[other]! + reach * vx[other]! - ownX, y[other]! + reach * vy[other]! - ownY);
-		if (distance >= nearestAt) continue;
+		const dx = x[other]! + reach * vx[other]! - ownX;
+		const dy = y[other]! + reach * vy[other]! - ownY;
+		const distance2 = dx * dx + dy * dy;
+		if (distance2 >= nearest2) continue;
 		const there = varianceAfter(variance[other]!, cross[other]!, speedVariance[other]!, dt, rule.q);
-		if (distance * distance > gate * (variance[row]! + there + 2 * mapVariance(vx[row]!, vy[row]!, rule))) continue;
+		if (distance2 > gate * (variance[row]! + there + 2 * mapVariance(vx[row]!, vy[row]!, rule))) continue;
 		const left = speedLeftAfter(dt);
 		const slip = Math.hypot(left * vx[other]! - vx[row]!, left * vy[other]! - vy[row]!);
 		const slack = speedVariance[row]! + speedVariance[other]! + VELOCITY_SLACK * VELOCITY_SLACK;
 		if (slip * slip > gate * slack || seenApart(table, row, other, scans, time - rule.apartFor)) continue;
 		nearest = other;
-		nearestAt = distance;
+		nearest2 = distance2;
 	}
 	return nearest;
 }

@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { expect, it } from 'vitest';
-import { confirmedTracks, startTracker, stepTracker, type PersonScan } from './person-tracks.ts';
+import { confirmedTracks, startTracker, stepTracker, stepTrackerAll, type PersonScan } from './person-tracks.ts';
 
 /** A room with people at least 0.6 m apart and robots whose maps and sensors are all a little wrong. */
 interface Room {
@@ -126,6 +126,40 @@ it('counts the same whatever robots call themselves and the people', () => {
 			}));
 			expect(count(renamed)).toBe(count(scans));
 			expect(count(nameless)).toBe(count(scans));
+		}),
+		FIXED
+	);
+});
+
+it('knows the same after a batch as after its scans one by one, and leaves what it was given alone', () => {
+	fc.assert(
+		fc.property(room, fc.array(fc.integer({ min: 1, max: 12 }), { minLength: 1 }), (one, sizes) => {
+			const { scans } = scansOf(one);
+			const single = scans.reduce((state, scan) => stepTracker(state, scan), startTracker());
+			let batched = startTracker();
+			for (let from = 0, k = 0; from < scans.length; k += 1) {
+				const given = structuredClone(batched);
+				const size = sizes[k % sizes.length]!;
+				const next = stepTrackerAll(batched, scans.slice(from, from + size));
+				expect(batched).toEqual(given);
+				batched = next;
+				from += size;
+			}
+			expect(batched).toEqual(single);
+		}),
+		FIXED
+	);
+});
+
+it('knows the same when it is told how far a robot sees', () => {
+	fc.assert(
+		fc.property(room, (one) => {
+			const { scans } = scansOf(one);
+			const told = scans.map((scan) => {
+				const { x, y, range } = one.robots[Number(scan.robot.slice('robot-'.length))]!;
+				return { ...scan, reach: { x, y, radius: range } };
+			});
+			expect(stepTrackerAll(startTracker(), told)).toEqual(stepTrackerAll(startTracker(), scans));
 		}),
 		FIXED
 	);

@@ -17,7 +17,7 @@ import {
 	type Sighting,
 	type TrackerRule
 } from './person-track.ts';
-import { Survey, surveyScan, type Reach } from './scan-survey.ts';
+import { boundRow, Survey, surveyScan, type Reach } from './scan-survey.ts';
 import { TrackTable } from './track-table.ts';
 
 export { DEFAULT_TRACKER_RULE, predictTrack };
@@ -78,13 +78,15 @@ export function stepTrackerAll(
 	rule: TrackerRule = DEFAULT_TRACKER_RULE
 ): TrackerState {
 	if (scans.length === 0) return state;
-	const room = scans.reduce((sum, { persons }) => sum + persons.length, 0);
-	const table = new TrackTable(state.tracks, room);
+	const table = new TrackTable(state.tracks);
+	const survey = new Survey();
+	survey.reserve(table.capacity);
+	for (let row = 0; row < table.size; row += 1) boundRow(survey, table, row, rule);
 	const batch: Batch = {
 		rule,
 		gate: chiSquareGate(rule.gateProbability, 2),
 		table,
-		survey: new Survey(state.tracks.length + room),
+		survey,
 		scans: new Map(state.scans),
 		dropped: [],
 		nextId: state.nextId,
@@ -121,6 +123,8 @@ function takeScan(batch: Batch, scan: PersonScan): void {
 	const latest = heard.at(-1)?.time ?? -Infinity;
 	if (!Number.isFinite(time) || time < latest - rule.lateLimit || heard.some((one) => one.time === time)) return;
 	batch.taken += 1;
+	table.reserve(persons.length);
+	survey.reserve(table.capacity);
 
 	surveyScan(survey, table, persons, robot, time, scan.reach, rule);
 	const { trackOf, namedBefore, moved } = matchPersons(survey, table, persons, names, gate, rule);
@@ -150,6 +154,7 @@ function takeScan(batch: Batch, scan: PersonScan): void {
 	const tracks = touched.map((row) => table.id[row]!);
 	scans.set(robot, withScan(heard, { time, tracks }, rule));
 	mergeTracks(table, touched, scans, time, gate, rule);
+	for (const row of touched) boundRow(survey, table, row, rule);
 }
 
 /** Tracks without those nobody can have seen for too long; call it when time passes without scans. */

@@ -19,28 +19,38 @@ export const FOLLOW_FOR = 1;
 export class Survey {
 	/** Tracks that any of the persons could belong to, in the order of the table, as expected at the time of the scan */
 	candidates = 0;
-	readonly row: Int32Array;
-	readonly x: Float64Array;
-	readonly y: Float64Array;
+	row = new Int32Array(0);
+	x = new Float64Array(0);
+	y = new Float64Array(0);
 	/** m², per axis, with what the maps of two robots may differ by; without the measurement's own variance */
-	readonly variance: Float64Array;
-	readonly alignment: Float64Array;
+	variance = new Float64Array(0);
+	alignment = new Float64Array(0);
 	/** s from the state to the scan */
-	readonly elapsed: Float64Array;
+	elapsed = new Float64Array(0);
 	/** Name under which this robot last reported the track, while that counts */
 	readonly name: (string | null)[] = [];
 
 	/** Tracks that are overdue or may lie in view, and where they are expected */
 	inView = 0;
-	readonly inViewRow: Int32Array;
-	readonly inViewX: Float64Array;
-	readonly inViewY: Float64Array;
+	inViewRow = new Int32Array(0);
+	inViewX = new Float64Array(0);
+	inViewY = new Float64Array(0);
 
-	constructor(rows: number) {
+	/** By row of the table: m round its place that matter at the time of its state, and m more per s before or after */
+	slack = new Float64Array(0);
+	rush = new Float64Array(0);
+
+	/** Makes room for a table of `rows` rows. */
+	reserve(rows: number): void {
+		if (rows <= this.slack.length) return;
+		const { slack, rush } = this;
 		[this.row, this.inViewRow] = [new Int32Array(rows), new Int32Array(rows)];
 		[this.x, this.y, this.variance] = [new Float64Array(rows), new Float64Array(rows), new Float64Array(rows)];
 		[this.alignment, this.elapsed] = [new Float64Array(rows), new Float64Array(rows)];
 		[this.inViewX, this.inViewY] = [new Float64Array(rows), new Float64Array(rows)];
+		[this.slack, this.rush] = [new Float64Array(rows), new Float64Array(rows)];
+		this.slack.set(slack);
+		this.rush.set(rush);
 	}
 }
 
@@ -50,6 +60,37 @@ export interface Reach {
 	readonly x: number;
 	readonly y: number;
 	readonly radius: number;
+}
+
+/** m; well above what rounding does to a place on a floor */
+const ROUNDING = 1e-6;
+
+/** To be called for every row whose state is new, before the next scan. */
+export function boundRow(survey: Survey, table: TrackTable, row: number, rule: TrackerRule): void {
+	const vx = table.vx[row]!;
+	const vy = table.vy[row]!;
+	// √(a + b) ≤ √a + √b, and a covariance is at most the product of the deviations, so the deviation of a position
+	// grows by no more than so much per second.
+	survey.slack[row] = Math.sqrt(FAR * (table.variance[row]! + 2 * mapVariance(vx, vy, rule))) + ROUNDING;
+	survey.rush[row] =
+		Math.sqrt(FAR * table.speedVariance[row]!) +
+		Math.sqrt((FAR * rule.q * rule.missTimeout) / 3) +
+		Math.sqrt(vx * vx + vy * vy) +
+		rule.maxSpeed;
+}
+
+/** What the rows of a table are held against. */
+interface Look {
+	readonly robot: string;
+	readonly time: number;
+	readonly reach: Reach | undefined;
+	/** Box round the persons, m; turned inside out when there are none */
+	readonly minX: number;
+	readonly minY: number;
+	readonly maxX: number;
+	readonly maxY: number;
+	/** m², largest variance of a measurement */
+	readonly noise: number;
 }
 
 /** Fills `survey` for a scan of `robot` at `time`. Linear in the rows of the table. */
@@ -62,11 +103,6 @@ export function surveyScan(
 	reach: Reach | undefined,
 	rule: TrackerRule
 ): void {
-	const { alive, x, y, vx, vy, updatedAt, seenAt, confirmed, size } = table;
-	const { missTimeout, confirmWithin, maxSpeed } = rule;
-	const viewX = reach?.x ?? 0;
-	const viewY = reach?.y ?? 0;
-	const viewRadius2 = reach ? reach.radius * reach.radius : Infinity;
 	let [minX, minY, maxX, maxY, noise] = [Infinity, Infinity, -Infinity, -Infinity, 0];
 	for (const person of persons) {
 		if (person.x < minX) minX = person.x;
@@ -75,38 +111,66 @@ export function surveyScan(
 		if (person.y > maxY) maxY = person.y;
 		noise = Math.max(noise, person.sd * person.sd);
 	}
+	const look: Look = { robot, time, reach, minX, minY, maxX, maxY, noise };
 	survey.candidates = 0;
 	survey.inView = 0;
+	const { x, y, updatedAt, seenAt, alive, size } = table;
+	const { slack, rush } = survey;
+	// Most of the floor is far from any one robot: what lies clear of both the persons and the view is passed over here.
+	const margin = Math.sqrt(FAR * noise);
+	const radius = reach?.radius ?? Infinity;
+	const left = Math.min(minX, (reach?.x ?? 0) - radius) - margin;
+	const right = Math.max(maxX, (reach?.x ?? 0) + radius) + margin;
+	const low = Math.min(minY, (reach?.y ?? 0) - radius) - margin;
+	const high = Math.max(maxY, (reach?.y ?? 0) + radius) + margin;
+	const patience = Math.min(rule.missTimeout, rule.confirmWithin);
 	for (let row = 0; row < size; row += 1) {
-		if (alive[row] === 0) continue;
-		const elapsed = time - updatedAt[row]!;
-		const motion = reachAfter(elapsed);
-		const ex = x[row]! + motion * vx[row]!;
-		const ey = y[row]! + motion * vy[row]!;
-		const unseenFor = time - seenAt[row]!;
-		const away2 = (ex - viewX) * (ex - viewX) + (ey - viewY) * (ey - viewY);
-		if (unseenFor > 0 && (away2 <= viewRadius2 || unseenFor > (confirmed[row] === 1 ? missTimeout : confirmWithin))) {
-			survey.inViewRow[survey.inView] = row;
-			survey.inViewX[survey.inView] = ex;
-			survey.inViewY[survey.inView] = ey;
-			survey.inView += 1;
-		}
-		const apart = Math.abs(elapsed);
-		if (apart > missTimeout) continue;
-		// m from the box round the persons, less what somebody who turns at once can walk
-		const beyond = Math.max(minX - ex, ex - maxX, minY - ey, ey - maxY) - maxSpeed * Math.min(apart, FOLLOW_FOR);
-		const variance = varianceAfter(table.variance[row]!, table.cross[row]!, table.speedVariance[row]!, elapsed, rule.q);
-		const maps = mapVariance(vx[row]!, vy[row]!, rule);
-		if (beyond > 0 && beyond * beyond > FAR * (variance + 2 * maps + noise)) continue;
-		const e = survey.candidates;
-		survey.candidates += 1;
-		survey.row[e] = row;
-		survey.x[e] = ex;
-		survey.y[e] = ey;
-		survey.elapsed[e] = elapsed;
-		survey.variance[e] = variance;
-		compareMaps(survey, e, table.sightings(row), maps, robot, time, rule.forgetAfter);
+		const px = x[row]!;
+		const py = y[row]!;
+		const room = slack[row]! + rush[row]! * Math.abs(time - updatedAt[row]!);
+		const clear = px < left - room || px > right + room || py < low - room || py > high + room;
+		if (alive[row] === 0 || (clear && time - seenAt[row]! <= patience)) continue;
+		surveyRow(survey, table, row, look, rule);
 	}
+}
+
+function surveyRow(survey: Survey, table: TrackTable, row: number, look: Look, rule: TrackerRule): void {
+	const { time, reach } = look;
+	const vx = table.vx[row]!;
+	const vy = table.vy[row]!;
+	const elapsed = time - table.updatedAt[row]!;
+	const motion = reachAfter(elapsed);
+	const x = table.x[row]! + motion * vx;
+	const y = table.y[row]! + motion * vy;
+	const unseenFor = time - table.seenAt[row]!;
+	if (unseenFor > 0) {
+		const timeout = table.confirmed[row] === 1 ? rule.missTimeout : rule.confirmWithin;
+		const isNear =
+			!reach || (x - reach.x) * (x - reach.x) + (y - reach.y) * (y - reach.y) <= reach.radius * reach.radius;
+		if (isNear || unseenFor > timeout) {
+			const k = survey.inView;
+			survey.inView += 1;
+			survey.inViewRow[k] = row;
+			survey.inViewX[k] = x;
+			survey.inViewY[k] = y;
+		}
+	}
+	const apart = Math.abs(elapsed);
+	if (apart > rule.missTimeout) return;
+	// m from the box round the persons, less what somebody who turns at once can walk
+	const away = Math.max(look.minX - x, x - look.maxX, look.minY - y, y - look.maxY);
+	const beyond = away - rule.maxSpeed * Math.min(apart, FOLLOW_FOR);
+	const variance = varianceAfter(table.variance[row]!, table.cross[row]!, table.speedVariance[row]!, elapsed, rule.q);
+	const maps = mapVariance(vx, vy, rule);
+	if (beyond > 0 && beyond * beyond > FAR * (variance + 2 * maps + look.noise)) return;
+	const e = survey.candidates;
+	survey.candidates += 1;
+	survey.row[e] = row;
+	survey.x[e] = x;
+	survey.y[e] = y;
+	survey.elapsed[e] = elapsed;
+	survey.variance[e] = variance;
+	compareMaps(survey, e, table.sightings(row), maps, look.robot, time, rule.forgetAfter);
 }
 
 /** Who has seen candidate `e` lately: under which name this robot did, and how many maps that makes. */

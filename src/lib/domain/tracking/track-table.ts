@@ -6,60 +6,68 @@ import { noiseTimeAfter, reachAfter, speedLeftAfter, type PersonTrack, type Sigh
 /** Of a track that is in the same place as no other. */
 export const NOBODY = -1;
 
+const NUMBERS = [
+	...(['x', 'y', 'vx', 'vy', 'variance', 'cross', 'speedVariance'] as const),
+	...(['updatedAt', 'seenAt', 'bornAt', 'closeSince'] as const)
+] as const;
+const INTEGERS = ['id', 'hits', 'misses', 'closeTo', 'measuredIn'] as const;
+
 export class TrackTable {
 	/** Rows in use, in the order of the tracks; rows of people who are gone keep their place and are not alive. */
 	size = 0;
-	readonly alive: Uint8Array;
+	/** Rows there is room for; every column is as long. Making room replaces the columns. */
+	capacity = 0;
+	alive = new Uint8Array(0);
 	/** Number of the scan that last measured the row; 0 none of those taken in here */
-	readonly measuredIn: Int32Array;
+	measuredIn = new Int32Array(0);
 
 	/** As in `PersonTrack` */
-	readonly id: Int32Array;
-	readonly x: Float64Array;
-	readonly y: Float64Array;
-	readonly vx: Float64Array;
-	readonly vy: Float64Array;
-	readonly variance: Float64Array;
-	readonly cross: Float64Array;
-	readonly speedVariance: Float64Array;
-	readonly updatedAt: Float64Array;
-	readonly seenAt: Float64Array;
-	readonly bornAt: Float64Array;
-	readonly hits: Int32Array;
-	readonly confirmed: Uint8Array;
-	readonly misses: Int32Array;
+	id = new Int32Array(0);
+	x = new Float64Array(0);
+	y = new Float64Array(0);
+	vx = new Float64Array(0);
+	vy = new Float64Array(0);
+	variance = new Float64Array(0);
+	cross = new Float64Array(0);
+	speedVariance = new Float64Array(0);
+	updatedAt = new Float64Array(0);
+	seenAt = new Float64Array(0);
+	bornAt = new Float64Array(0);
+	hits = new Int32Array(0);
+	confirmed = new Uint8Array(0);
+	misses = new Int32Array(0);
 	/** Id of the track in the same place, or `NOBODY`, and s since when */
-	readonly closeTo: Int32Array;
-	readonly closeSince: Float64Array;
+	closeTo = new Int32Array(0);
+	closeSince = new Float64Array(0);
 	readonly updatedBy: string[] = [];
 	readonly #seenBy: (readonly Sighting[])[] = [];
 
 	/** 1 when the sightings of the row are its own and may be changed */
-	readonly #ownsSightings: Uint8Array;
+	#ownsSightings = new Uint8Array(0);
 	/** 1 when the row differs from the track it was made from */
-	readonly #changed: Uint8Array;
+	#changed = new Uint8Array(0);
 	readonly #given: readonly PersonTrack[];
 	#anyChange = false;
 
-	/** @param room rows that may be added */
-	constructor(tracks: readonly PersonTrack[], room: number) {
-		const rows = tracks.length + room;
-		const numbers = () => new Float64Array(rows);
-		const integers = () => new Int32Array(rows);
-		[this.x, this.y, this.vx, this.vy] = [numbers(), numbers(), numbers(), numbers()];
-		[this.variance, this.cross, this.speedVariance] = [numbers(), numbers(), numbers()];
-		[this.updatedAt, this.seenAt, this.bornAt, this.closeSince] = [numbers(), numbers(), numbers(), numbers()];
-		[this.id, this.hits, this.misses, this.closeTo] = [integers(), integers(), integers(), integers()];
-		this.measuredIn = integers();
-		this.alive = new Uint8Array(rows);
-		this.confirmed = new Uint8Array(rows);
-		this.#ownsSightings = new Uint8Array(rows);
-		this.#changed = new Uint8Array(rows);
+	constructor(tracks: readonly PersonTrack[]) {
 		this.#given = tracks;
+		this.reserve(tracks.length);
 		for (const track of tracks) this.#load(track);
 	}
 
-	/** Row of one more track. */
+	/** Makes room for as many more rows. */
+	reserve(rows: number): void {
+		if (this.size + rows <= this.capacity) return;
+		this.capacity = Math.max(this.size + rows, Math.ceil(1.25 * this.capacity) + 16);
+		for (const column of NUMBERS) this[column] = widened(this[column], this.capacity);
+		for (const column of INTEGERS) this[column] = widened(this[column], this.capacity);
+		this.alive = widened(this.alive, this.capacity);
+		this.confirmed = widened(this.confirmed, this.capacity);
+		this.#ownsSightings = widened(this.#ownsSightings, this.capacity);
+		this.#changed = widened(this.#changed, this.capacity);
+	}
+
+	/** Row of one more track, for which room has been made. */
 	add(track: PersonTrack): number {
 		const row = this.#load(track);
 		this.markChanged(row);
@@ -190,4 +198,10 @@ export class TrackTable {
 			closeTo: this.closeTo[row] === NOBODY ? null : { id: this.closeTo[row]!, since: this.closeSince[row]! }
 		};
 	}
+}
+
+function widened<Column extends Float64Array | Int32Array | Uint8Array>(column: Column, length: number): Column {
+	const wide = new (column.constructor as new (length: number) => Column)(length);
+	wide.set(column);
+	return wide;
 }
