@@ -58,7 +58,7 @@ const demo: Scenario = {
 	peak: [340, 90],
 	yielding: 0.7,
 	children: 0.06,
-	curiosity: 0.002,
+	curiosity: 0.001,
 	faults: {
 		...NO_FAULTS,
 		onlookers: 0.25,

@@ -93,7 +93,7 @@ export class Errands {
 		} else if (this.phase === 'idle' && time >= this.until && !this.hold && !this.paused) this.#nextTask(time);
 		else if (this.phase === 'waiting' && time >= this.until && task) {
 			if (task.rideTo === null) this.phase = 'driving';
-			else if (liftWorks) this.#ride(task.rideTo, time);
+			else if (liftWorks && this.#isFreeOn(task.rideTo)) this.#ride(task.rideTo, time);
 		} else if (this.phase === 'arrived' && time >= this.until) this.#finish(time);
 		else if (this.phase === 'driving' && task) this.#checkArrival(task, time);
 	}
@@ -128,7 +128,7 @@ export class Errands {
 		if (atHome && this.#vehicle.battery < 0.8) {
 			this.task = null;
 			this.phase = 'charging';
-		} else this.#rest(time, atHome ? 60 : 12);
+		} else this.#rest(time, atHome ? 180 : 60);
 	}
 
 	#rest(time: number, most: number): void {
@@ -157,6 +157,14 @@ export class Errands {
 			if (this.assign(goal, floor, time)) return;
 		}
 		this.until = time + 5;
+	}
+
+	/** Nobody rides into a robot that still stands before the lift on the other floor. */
+	#isFreeOn(floor: number): boolean {
+		const lift = this.#vehicle.floors[floor]!.model.lift!;
+		return this.#vehicle.others.every(
+			(other) => other.floor !== floor || Math.hypot(other.x - lift.x, other.y - lift.y) > 1.4
+		);
 	}
 
 	/** Out of the lift on the other floor, on with the same errand. */

@@ -2,7 +2,7 @@
 
 import type { FloorWorld } from '../core/floor-world.ts';
 import { MapFrame } from '../core/floor-world.ts';
-import { distanceAt } from '../core/nav-grid.ts';
+import { distanceAt, nearestFree } from '../core/nav-grid.ts';
 import type { Random } from '../core/random.ts';
 import type { RobotBody } from '../crowd/walking.ts';
 import type { FleetRobot } from '../venue/model.ts';
@@ -177,6 +177,7 @@ export class Vehicle implements RobotBody {
 			this.#plan.speed = 0.15;
 			this.#plan.heading = direction;
 		}
+		if (blocked === 'walls') this.#leaveWall();
 		if (blocked && planner === 'decoupled') this.#stopWanting();
 		else {
 			this.wantX = Math.cos(this.#plan.heading);
@@ -199,9 +200,9 @@ export class Vehicle implements RobotBody {
 			let near = 0;
 			this.floors[this.floor]!.people.near(this.x, this.y, this.radius + 1.1, () => near++);
 			if (near > 2 || time - since < 4) return;
-		} else if (this.cause !== 'robots') return;
+		} else if (this.cause !== 'robots' && this.cause !== 'walls') return;
 		const first =
-			this.cause === 'people' ||
+			this.cause !== 'robots' ||
 			this.others.some(
 				(other) =>
 					other.floor === this.floor && other.index < this.index && Math.hypot(other.x - this.x, other.y - this.y) < 2.5
@@ -238,6 +239,14 @@ export class Vehicle implements RobotBody {
 		this.#plan.heading = direction + this.#ditherTurn;
 		this.#plan.speed = 0.45 * this.robot.model.maxSpeed;
 		this.cause = 'people';
+	}
+
+	/** Too close to a wall for its planner, it first goes back to open floor. */
+	#leaveWall(): void {
+		const free = nearestFree(this.floors[this.floor]!.driveGrid, this.x, this.y);
+		if (!free || (free.x === this.x && free.y === this.y)) return;
+		this.#plan.heading = Math.atan2(free.y - this.y, free.x - this.x);
+		this.#plan.speed = 0.25;
 	}
 
 	#stopWanting(): void {

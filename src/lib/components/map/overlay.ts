@@ -2,7 +2,6 @@
 
 import type { LiveHalt } from '../../contracts/live.ts';
 import type { Related, Selection } from '../../state/selection.ts';
-import { sizeCanvas } from './canvas.ts';
 import {
 	describeOnPlan,
 	drawGoal,
@@ -43,7 +42,7 @@ export class Overlay {
 
 	/** @param nowMs local time */
 	draw(view: View, ink: Ink, related: Related, nowMs: number): void {
-		const ctx = sizeCanvas(this.canvas, view);
+		const ctx = this.#begin(view);
 		if (!ctx) return;
 		const { scene } = this;
 		this.#spots = [];
@@ -69,6 +68,16 @@ export class Overlay {
 		if (best) return best.selection;
 		const zone = this.scene.zoneAt(floorAt(view, px, py));
 		return zone === null ? null : { kind: 'zone', id: zone };
+	}
+
+	#begin({ width, height }: View): CanvasRenderingContext2D | null {
+		const ratio = Math.min(devicePixelRatio || 1, 2);
+		const [w, h] = [Math.round(width * ratio), Math.round(height * ratio)];
+		if (this.canvas.width !== w || this.canvas.height !== h) [this.canvas.width, this.canvas.height] = [w, h];
+		const ctx = this.canvas.getContext('2d');
+		ctx?.setTransform(ratio, 0, 0, ratio, 0, 0);
+		ctx?.clearRect(0, 0, width, height);
+		return ctx;
 	}
 
 	/** Points without identity and without colour coding, all in one path. */

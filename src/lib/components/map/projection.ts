@@ -1,6 +1,40 @@
-/** The one place where metres of a floor become pixels. y points up on the floor and down on the screen. */
+/**
+ * The one place where metres of a floor become longitude and latitude, and pixels.
+ *
+ * The floor frame is laid on the sphere at (0, 0) through the inverse of the web map's own Mercator projection, so that
+ * the drawing is exactly to scale: a metre is the same number of pixels everywhere on the plan.
+ */
 
 import type { Bounds, Point, Ring } from '../../domain/geometry/types.ts';
+
+/** Radius of the sphere of the web Mercator projection, m (EPSG:3857). */
+const RADIUS_M = 6_378_137;
+const DEGREES = 180 / Math.PI;
+/** Pixels of the whole world at zoom 0 in the map library. */
+const WORLD_PX = 512;
+
+/** Longitude and latitude, degrees, of a point of the floor. */
+export const toLngLat = (x: number, y: number): [lng: number, lat: number] => [
+	(x / RADIUS_M) * DEGREES,
+	Math.atan(Math.sinh(y / RADIUS_M)) * DEGREES
+];
+
+/** The point of the floor, m, at a longitude and latitude. */
+export const fromLngLat = (lng: number, lat: number): Point => ({
+	x: (lng / DEGREES) * RADIUS_M,
+	y: Math.asinh(Math.tan(lat / DEGREES)) * RADIUS_M
+});
+
+/** Pixels per metre at a zoom of the map, and back. */
+export const pxPerMetre = (zoom: number): number => (WORLD_PX * 2 ** zoom) / (2 * Math.PI * RADIUS_M);
+export const zoomAt = (pxPerM: number): number => Math.log2((pxPerM * 2 * Math.PI * RADIUS_M) / WORLD_PX);
+
+/** Closed ring of a GeoJSON polygon. */
+export function lngLatRing(ring: Ring): [number, number][] {
+	const closed = ring.map(([x, y]) => toLngLat(x, y));
+	if (closed[0]) closed.push(closed[0]);
+	return closed;
+}
 
 /** What a viewport of `width` × `height` px shows: the floor point in its middle and the scale. */
 export interface View {
@@ -8,14 +42,6 @@ export interface View {
 	readonly pxPerM: number;
 	readonly width: number;
 	readonly height: number;
-}
-
-/** px kept free at each edge */
-export interface Margins {
-	readonly top: number;
-	readonly right: number;
-	readonly bottom: number;
-	readonly left: number;
 }
 
 export const screenX = (view: View, x: number): number => view.width / 2 + (x - view.centre.x) * view.pxPerM;
@@ -26,41 +52,6 @@ export const floorAt = (view: View, px: number, py: number): Point => ({
 	x: view.centre.x + (px - view.width / 2) / view.pxPerM,
 	y: view.centre.y - (py - view.height / 2) / view.pxPerM
 });
-
-/**
- * The view that shows all of `bounds` between the margins, as large as fits but never above `mostPxPerM`. Margins that
- * leave no room are ignored.
- */
-export function fitView(
-	bounds: Bounds,
-	size: { readonly width: number; readonly height: number },
-	margins: Margins,
-	mostPxPerM: number
-): View {
-	const roomX = size.width - margins.left - margins.right;
-	const roomY = size.height - margins.top - margins.bottom;
-	const { top, right, bottom, left } = roomX > 0 && roomY > 0 ? margins : { top: 0, right: 0, bottom: 0, left: 0 };
-	const scale = Math.min(
-		(size.width - left - right) / Math.max(bounds.maxX - bounds.minX, 1e-3),
-		(size.height - top - bottom) / Math.max(bounds.maxY - bounds.minY, 1e-3),
-		mostPxPerM
-	);
-	const pxPerM = scale > 0 ? scale : 1;
-	return {
-		centre: {
-			x: (bounds.minX + bounds.maxX) / 2 + (right - left) / 2 / pxPerM,
-			y: (bounds.minY + bounds.maxY) / 2 - (bottom - top) / 2 / pxPerM
-		},
-		pxPerM,
-		...size
-	};
-}
-
-/** Whether a point of the floor is on the screen between the margins. */
-export function isInSight(view: View, margins: Margins, x: number, y: number): boolean {
-	const [px, py] = [screenX(view, x), screenY(view, y)];
-	return px > margins.left && px < view.width - margins.right && py > margins.top && py < view.height - margins.bottom;
-}
 
 /** Smallest box around a ring; an empty ring has an empty box at the origin. */
 export function boundsOf(ring: Ring): Bounds {
