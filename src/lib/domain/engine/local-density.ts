@@ -29,7 +29,9 @@ export function computeLocalDensity(
 	const { seen, walkable } = discAreas(model, observed, x, y, radius);
 	let persons = 0;
 	for (let i = 0; i < points.length; i += 2) {
-		if (Math.hypot(points[i]! - x, points[i + 1]! - y) <= radius) persons += 1;
+		const dx = points[i]! - x;
+		const dy = points[i + 1]! - y;
+		if (dx * dx + dy * dy <= radius * radius) persons += 1;
 	}
 	const coverage = walkable > 0 ? seen / walkable : 0;
 	return { density: coverage >= leastCoverage && seen > 0 ? persons / seen : null, coverage, persons };

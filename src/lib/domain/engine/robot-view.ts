@@ -95,7 +95,8 @@ export interface RobotView {
 }
 
 const POSES_KEPT = 24;
-const MOMENTS_KEPT_S = 20;
+/** 20 s at the usual two a second */
+const MOMENTS_KEPT = 40;
 
 export function startRobotView(robot: Robot, open: OpenHalt | null = null): RobotView {
 	return {
@@ -127,7 +128,7 @@ export const withPose = (view: RobotView, map: string, pose: FloorPose): RobotVi
 
 export const withMoment = (view: RobotView, moment: Moment): RobotView => ({
 	...view,
-	moments: [...view.moments.filter(({ time }) => moment.time - time <= MOMENTS_KEPT_S), moment]
+	moments: [...view.moments.slice(1 - MOMENTS_KEPT), moment]
 });
 
 /** Where the robot was at `time`, from the kept poses; the nearest of them outside their span. Null without poses. */

@@ -37,6 +37,8 @@ const RESTART_AFTER_MS = [250, 500, 1000, 2000, 5000, 10_000];
 const SETTLED_MS = 30_000;
 /** ms a thread is given to finish before it is ended */
 const STOP_WITHIN_MS = 5000;
+/** A tick leaves much behind that lives no longer than the tick; with room for several, most of it is never copied. */
+const ENGINE_MEMORY = { maxYoungGenerationSizeMb: 64 };
 /** ms without a word from the engine after which it counts as stuck */
 const ENGINE_QUIET_MS = 5000;
 
@@ -125,7 +127,7 @@ export async function startThreads({
 	const engine = supervise<ToEngine, FromEngine>({
 		name: 'engine',
 		log,
-		spawn: () => spawn('engine', { workerData: engineStart }),
+		spawn: () => spawn('engine', { workerData: engineStart, resourceLimits: ENGINE_MEMORY }),
 		hear(message) {
 			heardAt = Date.now();
 			if (message.type === 'ready') engineUp = true;
