@@ -148,12 +148,16 @@ export class World {
 
 	#startFaults(dt: number): void {
 		const { time } = this;
+		if (this.#firstOnlookers !== null && this.truth.halts.some(({ onset, end }) => (end ?? time) - onset >= 8))
+			this.#firstOnlookers = null;
 		for (const vehicle of this.#vehicles) {
 			if (vehicle.phase !== 'driving' || vehicle.paused) continue;
 			const fault = vehicle.faults.draw(dt, time);
 			if (fault?.name === 'onlookers') this.#gather(vehicle, fault.seconds);
 			if (this.#firstOnlookers === null || time < this.#firstOnlookers || vehicle.errands.legTime(time) < 3) continue;
-			if (vehicle.robot.planner === 'decoupled' && this.#gather(vehicle, 60)) this.#firstOnlookers = null;
+			if (vehicle.robot.planner !== 'decoupled' || !this.#gather(vehicle, 60)) continue;
+			// The ring may not close in time; then other people try another robot, until something has stood for a while.
+			this.#firstOnlookers = time + 20;
 		}
 	}
 
@@ -161,10 +165,10 @@ export class World {
 	#gather(vehicle: Vehicle, seconds: number): boolean {
 		const { life, people, model } = this.floors[vehicle.floor]!;
 		let near = 0;
-		people.near(vehicle.x, vehicle.y, 10, () => near++);
+		people.near(vehicle.x, vehicle.y, 7, () => near++);
 		const private_ = model.floor.zones.find((z) => z.private && isInsideRing(z.polygon.outer, vehicle.x, vehicle.y));
-		if (near < 7 || private_) return false;
+		if (near < 5 || private_) return false;
 		const index = this.#byFloor[vehicle.floor]!.indexOf(vehicle);
-		return life.gather(index, vehicle, vehicle.radius > 0.4 ? 9 : 7, seconds, 12) >= 6;
+		return life.gather(index, vehicle, vehicle.radius > 0.4 ? 9 : 7, seconds, 9) >= 5;
 	}
 }

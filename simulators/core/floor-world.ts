@@ -1,17 +1,19 @@
 /** One simulated floor: its people, where they can walk, and where robots can drive. */
 
-import type { Point, Similarity } from '../../src/lib/domain/geometry/types.ts';
+import type { Bounds, Point, Similarity } from '../../src/lib/domain/geometry/types.ts';
 import { Life, type LifeOptions } from '../crowd/life.ts';
 import { Population } from '../crowd/population.ts';
 import { Walking, type RobotBody } from '../crowd/walking.ts';
 import type { PhaseNow } from '../crowd/timetable.ts';
-import type { VenueFloor } from '../venue/model.ts';
+import type { PlaceKind, VenueFloor } from '../venue/model.ts';
 import { computeDistanceField, createNavGrid, isInsideRing, type DistanceField, type NavGrid } from './nav-grid.ts';
 import type { Random } from './random.ts';
 
 /** m the centre of a person or a robot keeps from walls when planning its way. */
 const WALK_CLEARANCE = 0.25;
 const DRIVE_CLEARANCE = 0.55;
+/** Where people stand about: robots are routed round it if they can be. */
+const SHUNNED: readonly PlaceKind[] = ['table', 'audience', 'counter', 'lift', 'lounge'];
 
 export class FloorWorld {
 	readonly people: Population;
@@ -25,8 +27,12 @@ export class FloorWorld {
 		random: Random,
 		options: LifeOptions
 	) {
-		const walkGrid = gridOf(model, WALK_CLEARANCE);
-		this.driveGrid = gridOf(model, DRIVE_CLEARANCE);
+		const walkGrid = gridOf(model, WALK_CLEARANCE, []);
+		this.driveGrid = gridOf(
+			model,
+			DRIVE_CLEARANCE,
+			model.places.filter(({ kind }) => SHUNNED.includes(kind))
+		);
 		this.#fields = fieldsOf(this.driveGrid);
 		this.people = new Population(walkGrid.walls.bounds, Math.max(64, options.peak * 2));
 		this.walking = new Walking(this.people, walkGrid, random.fork('walking'));
@@ -85,10 +91,10 @@ export class FloorWorld {
 const grids = new WeakMap<VenueFloor, Map<number, NavGrid>>();
 const fields = new WeakMap<NavGrid, Map<string, DistanceField>>();
 
-function gridOf(model: VenueFloor, clearance: number): NavGrid {
+function gridOf(model: VenueFloor, clearance: number, shunned: readonly Bounds[]): NavGrid {
 	const known = grids.get(model) ?? new Map<number, NavGrid>();
 	grids.set(model, known);
-	const grid = known.get(clearance) ?? createNavGrid(model.floor, clearance);
+	const grid = known.get(clearance) ?? createNavGrid(model.floor, clearance, shunned);
 	known.set(clearance, grid);
 	return grid;
 }

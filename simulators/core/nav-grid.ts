@@ -2,7 +2,7 @@
 
 import FlatQueue from 'flatqueue';
 import type { Floor } from '../../src/lib/domain/floor.ts';
-import type { Point, Polygon, Ring } from '../../src/lib/domain/geometry/types.ts';
+import type { Bounds, Point, Polygon, Ring } from '../../src/lib/domain/geometry/types.ts';
 import { createWallGrid, wallsOf, type WallGrid } from './wall-grid.ts';
 
 export interface NavGrid {
@@ -23,11 +23,22 @@ export interface NavGrid {
 	isOpen(ax: number, ay: number, bx: number, by: number): boolean;
 }
 
+/** How many times farther a metre of shunned floor counts. */
+const SHUN = 2.5;
+
 /** Travel cost to the nearest source cell, metres where the floor is open; Infinity where it cannot be reached. */
 export type DistanceField = Float32Array;
 
-/** @param clearance m the walker's centre keeps from every wall */
-export function createNavGrid(floor: Pick<Floor, 'walkable' | 'walls'>, clearance: number, cell = 0.5): NavGrid {
+/**
+ * @param clearance m the walker's centre keeps from every wall
+ * @param shunned parts of the floor that are crossed only when the way round is much longer
+ */
+export function createNavGrid(
+	floor: Pick<Floor, 'walkable' | 'walls'>,
+	clearance: number,
+	shunned: readonly Bounds[] = [],
+	cell = 0.5
+): NavGrid {
 	const walls = createWallGrid(wallsOf(floor));
 	const { minX, minY, maxX, maxY } = walls.bounds;
 	const cols = Math.ceil((maxX - minX) / cell);
@@ -40,7 +51,8 @@ export function createNavGrid(floor: Pick<Floor, 'walkable' | 'walls'>, clearanc
 		const y = minY + (Math.floor(i / cols) + 0.5) * cell;
 		const gap = walls.distance(x, y);
 		free[i] = inside[i] && gap >= clearance ? 1 : 0;
-		cost[i] = 1 + Math.max(0, 0.9 - Math.min(gap, 1.5)) * 0.8;
+		const shun = shunned.some(({ minX: a, maxX: b, minY: c, maxY: d }) => x > a && x < b && y > c && y < d);
+		cost[i] = (1 + Math.max(0, 0.9 - Math.min(gap, 1.5)) * 0.8) * (shun ? SHUN : 1);
 	}
 	const index = (x: number, y: number) => {
 		const col = Math.floor((x - minX) / cell);

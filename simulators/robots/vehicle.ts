@@ -249,6 +249,21 @@ export class Vehicle implements RobotBody {
 		this.#plan.speed = 0.25;
 	}
 
+	/** At a corner its grid did not show: a short drive towards the most open side. */
+	#turnFromWall(time: number): void {
+		const { walls } = this.floors[this.floor]!.driveGrid;
+		let most = 0;
+		for (let k = 0; k < 12; k++) {
+			const heading = (k * Math.PI) / 6;
+			const gap = Math.min(1, walls.distance(this.x + 0.3 * Math.cos(heading), this.y + 0.3 * Math.sin(heading)));
+			const score = gap - 0.05 * Math.abs(wrap(heading - this.#plan.heading));
+			if (score <= most) continue;
+			most = score;
+			this.#backOffHeading = heading;
+		}
+		this.#backOffUntil = time + 1.2;
+	}
+
 	#stopWanting(): void {
 		this.wantX = this.wantY = 0;
 	}
@@ -311,7 +326,10 @@ export class Vehicle implements RobotBody {
 		const y = this.y + Math.sin(this.heading) * this.speed * dt;
 		const { walls } = this.floors[this.floor]!.driveGrid;
 		const gap = walls.distance(x, y);
-		if (this.speed > 0 && gap < this.radius && gap < walls.distance(this.x, this.y)) this.speed = 0;
+		if (this.speed > 0 && gap < this.radius && gap < walls.distance(this.x, this.y)) {
+			this.speed = 0;
+			this.#turnFromWall(time);
+		}
 		this.vx = Math.cos(this.heading) * this.speed;
 		this.vy = Math.sin(this.heading) * this.speed;
 		if (this.speed === 0) return;

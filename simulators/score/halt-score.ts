@@ -27,6 +27,8 @@ export interface DetectedHalt {
 	readonly detectedAt: number;
 	readonly end: number | null;
 	readonly verdict: Verdict;
+	/** What became of it while it was open */
+	readonly changes: readonly { readonly kind: HaltKind; readonly at: number }[];
 }
 
 interface Pair {
@@ -47,7 +49,8 @@ const ONSET_WITHIN_S = 5;
 
 /**
  * One-to-one per robot, as many pairs as possible and then the least sum of onset differences. Halts that count are
- * paired first, so that a short stop beside one never takes its report away.
+ * paired first, so that a short stop beside one never takes its report away. A halt that turned into another kind while
+ * its report was still open, as when a robot's drive fails where people held it up, is reported by that change.
  */
 export function matchHalts(truths: readonly ExpectedHalt[], found: readonly DetectedHalt[]): HaltMatches {
 	const pairs: Pair[] = [];
@@ -64,12 +67,25 @@ export function matchHalts(truths: readonly ExpectedHalt[], found: readonly Dete
 			}
 		}
 	}
+	for (const truth of truths) {
+		if (!truth.counts || paired.has(truth)) continue;
+		for (const halt of found) {
+			const change = halt.robot === truth.robot ? halt.changes.find((one) => tells(one, truth)) : undefined;
+			if (!change) continue;
+			pairs.push({ truth, found: { ...halt, kind: change.kind, onset: change.at, detectedAt: change.at } });
+			paired.add(truth);
+			break;
+		}
+	}
 	return {
 		pairs,
 		missed: truths.filter((truth) => truth.counts && !paired.has(truth)),
 		falseAlarms: found.filter((halt) => !paired.has(halt))
 	};
 }
+
+const tells = ({ kind, at }: DetectedHalt['changes'][number], truth: ExpectedHalt): boolean =>
+	kind === truth.kind && Math.abs(at - truth.onset) <= ONSET_WITHIN_S;
 
 /** How often each pair of words came together, as `true>found`. */
 export function countPairs<T>(pairs: readonly T[], words: (pair: T) => readonly [string, string]): Map<string, number> {

@@ -190,14 +190,19 @@ class FoundHalts {
 				onset: onset - EPOCH_S,
 				detectedAt: detectedAt - EPOCH_S,
 				end: null,
-				verdict
+				verdict,
+				changes: []
 			});
 		} else if (event.type === 'halt_changed' || event.type === 'halt_ended') {
 			const index = this.#open.get(event.halt.incident);
 			if (index === undefined) return;
 			const halt = this.halts[index]!;
-			this.halts[index] =
-				event.type === 'halt_changed' ? { ...halt, lastKind: event.halt.kind } : { ...halt, end: event.at - EPOCH_S };
+			this.halts[index] = event.type === 'halt_changed' ? changed(halt, event) : { ...halt, end: event.at - EPOCH_S };
 		}
 	}
+}
+
+function changed(halt: DetectedHalt, event: Extract<EngineEvent, { type: 'halt_changed' }>): DetectedHalt {
+	const { kind } = event.halt;
+	return { ...halt, lastKind: kind, changes: [...halt.changes, { kind, at: event.at - EPOCH_S }] };
 }

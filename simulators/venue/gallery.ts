@@ -116,7 +116,7 @@ const goals = [
 	goal('lounge', 112, 12)
 ];
 const docks = Array.from({ length: 9 }, (_, i) => goal(`gallery-dock-${i + 1}`, 17 + 2 * i, 39));
-const lift = goal('gallery-lift', 39, 34.6);
+const lift = goal('gallery-lift', 43.4, 37);
 
 export const GALLERY: VenueFloor = {
 	floor: {

@@ -138,8 +138,8 @@ const goals: RobotGoal[] = [
 	goal('hall-c-north', 105, 60),
 	goal('hall-c-south', 93, 33),
 	goal('kitchen', 117, 2.5),
-	goal('tables', 93, 20),
-	goal('tables-east', 113.5, 19.5),
+	goal('tables', 92.5, 27.5),
+	goal('tables-east', 118.3, 20),
 	goal('loading-east', 114, 73),
 	goal('loading-west', 10, 73),
 	goal('loading-middle', 66, 73)
@@ -148,7 +148,8 @@ const goals: RobotGoal[] = [
 const docks = Array.from({ length: 17 }, (_, i) => goal(`dock-${i + 1}`, 3 + 2 * i, 78.6));
 
 const doors = [goal('door-a', 20, 70), goal('door-b', 45, 70), goal('door-c', 100, 70)];
-const lift = goal('lift', 60, 12.2);
+// The goods lift is on the west side of the core, away from the visitors' doors.
+const lift = goal('lift', 55.6, 16);
 
 export const GROUND: VenueFloor = {
 	floor: {

@@ -6,7 +6,7 @@ import { matchHalts, type DetectedHalt, type ExpectedHalt } from '../../simulato
 import { runScore, type ScoreOptions } from '../../simulators/score/run.ts';
 
 const SMALL: ScoreOptions = { seed: 5, hours: 0.03, faults: 'all', robots: 4, people: 80 };
-/** Six lively minutes of the whole fleet: some fifteen halts. */
+/** Six lively minutes of the whole fleet: some ten halts, so that one more or less is no sign. */
 const LIVELY: ScoreOptions = { seed: 3, hours: 0.1, faults: 'all', robots: 24, people: null };
 /** ms; far beyond what a run takes, for a machine that is busy with other things. */
 const PATIENCE = 300_000;
@@ -27,7 +27,8 @@ const found = (onset: number, robot = 'porter-01'): DetectedHalt => ({
 	onset,
 	detectedAt: onset + 8,
 	end: null,
-	verdict: 'open'
+	verdict: 'open',
+	changes: []
 });
 
 describe('matching', () => {
@@ -45,6 +46,15 @@ describe('matching', () => {
 		const { pairs, missed, falseAlarms } = matchHalts([truth(10, false), truth(13)], [found(10)]);
 		expect(pairs.map(({ truth: { onset } }) => onset)).toEqual([13]);
 		expect([missed.length, falseAlarms.length]).toEqual([0, 0]);
+	});
+
+	it('hears of a fault in the middle of another halt by the change of its kind', () => {
+		const fault: ExpectedHalt = { ...truth(30), kind: 'fault' };
+		const turned: DetectedHalt = { ...found(10), changes: [{ kind: 'fault', at: 30.2 }] };
+		const { pairs, missed, falseAlarms } = matchHalts([truth(10), fault], [turned]);
+		expect(pairs.map((pair) => pair.found.kind)).toEqual(['stall', 'fault']);
+		expect([missed.length, falseAlarms.length]).toEqual([0, 0]);
+		expect(matchHalts([truth(10), { ...fault, onset: 40 }], [turned]).missed).toHaveLength(1);
 	});
 
 	it('does not ask for a halt that does not count', () => {

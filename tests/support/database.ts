@@ -187,5 +187,6 @@ export const liveFrame = (change: Partial<LiveFrame> = {}): LiveFrame => ({
 	halts: [],
 	observed_m2: 0,
 	coverage: 0,
+	flexibility: { value_m_s: 0.3, n: 0, learned: false, noise_floor_m_s: 0.2 },
 	...change
 });

@@ -44,7 +44,7 @@ export interface TestServer {
 	readonly app: App;
 	readonly origin: string;
 	/** What the threads were given, to speak in their name; `health` is what they answer. */
-	readonly threads: StartThreads & { health: LiveHealth; stopped: number };
+	readonly threads: StartThreads & { health: LiveHealth; stopped: number; forgotten: string[] };
 	fetch(path: string, init?: RequestInit): Promise<Response>;
 	/** Headers of a program with a token of a new person in this role */
 	as(role: Role): Promise<Record<string, string>>;
@@ -56,9 +56,10 @@ export async function startTestServer(env: Record<string, string> = {}): Promise
 	const settings = readSettings({ LOG_LEVEL: 'silent', ...env, DATABASE_PATH: database.path });
 	let threads: TestServer['threads'] | undefined;
 	const app = await startApp(settings, async (parts): Promise<Threads> => {
-		const given = (threads = { ...parts, health: HEALTHY, stopped: 0 });
+		const given = (threads = { ...parts, health: HEALTHY, stopped: 0, forgotten: [] as string[] });
 		return {
 			reload: () => {},
+			forgetFlexibility: (venue) => void given.forgotten.push(venue),
 			health: () => given.health,
 			stop: async () => void given.stopped++,
 			brokerPort: null

@@ -26,7 +26,13 @@ export function toLiveFrame(venue: string, { floor }: FloorModel, frame: Frame):
 		}),
 		halts: frame.halts.map(toLiveHalt),
 		observed_m2: hundredth(frame.observedArea),
-		coverage: frame.coverage
+		coverage: frame.coverage,
+		flexibility: {
+			value_m_s: frame.flexibility.value,
+			n: frame.flexibility.n,
+			learned: frame.flexibility.learned,
+			noise_floor_m_s: frame.flexibility.noiseFloor
+		}
 	};
 }
 

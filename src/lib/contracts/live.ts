@@ -101,6 +101,18 @@ export interface LiveFrame {
 	/** Total observed walkable floor, m², and its share of the walkable floor */
 	readonly observed_m2: number;
 	readonly coverage: number;
+	/** What people of the venue give way by, as used for room shared */
+	readonly flexibility: LiveFlexibility;
+}
+
+export interface LiveFlexibility {
+	readonly value_m_s: number;
+	/** Windows of tracks behind the value */
+	readonly n: number;
+	/** False while too few windows are known and the default is used */
+	readonly learned: boolean;
+	/** What tracker noise alone would give */
+	readonly noise_floor_m_s: number;
 }
 
 /** Density field over the floor's grid, row by row from the lower left corner. */
@@ -170,6 +182,8 @@ export interface LiveDelta {
 	readonly zones: readonly LiveZone[];
 	/** Present when any halt changed, then complete. */
 	readonly halts?: readonly LiveHalt[];
+	/** Present when it changed. */
+	readonly flexibility?: LiveFlexibility;
 	readonly observed_m2: number;
 	readonly coverage: number;
 }

@@ -15,7 +15,10 @@ export interface EngineStart {
 
 export type ToEngine =
 	/** Floors, zones, robots or rules changed in the database. */
-	{ readonly type: 'reload' } | { readonly type: 'stop' };
+	| { readonly type: 'reload' }
+	/** Forget how people of a venue give way and learn it anew. */
+	| { readonly type: 'forget_flexibility'; readonly venue: string }
+	| { readonly type: 'stop' };
 
 export type FromEngine =
 	| { readonly type: 'ready' }

@@ -1,7 +1,7 @@
 /** Requests to the desk's own API from the browser. An answer that is not a success becomes an error with the server's words. */
 
 import type { AlarmPage, IncidentDetail, IncidentPage, RejectedMessages, RobotList } from '../contracts/api.ts';
-import type { LiveAlarm, LiveHealth } from '../contracts/live.ts';
+import type { LiveAlarm, LiveFrame, LiveHealth } from '../contracts/live.ts';
 
 type Fetch = typeof fetch;
 type Query = Readonly<Record<string, string | number | null | undefined>>;
@@ -30,6 +30,19 @@ export const readIncident = (id: string, using: Fetch = fetch) =>
 /** Acknowledges an alarm; a second time changes nothing and answers with the first. */
 export function acknowledgeAlarm(id: number): Promise<LiveAlarm> {
 	return ask<LiveAlarm>(`/alarms/${id}/acknowledge`, fetch, {
+		method: 'POST',
+		headers: { 'content-type': 'application/json' },
+		body: '{}'
+	});
+}
+
+/** The newest picture of a floor, for pages that do not follow it live. */
+export const readFrame = (floor: string, using: Fetch = fetch) =>
+	get<LiveFrame>(`/floors/${encodeURIComponent(floor)}/frame`, {}, using);
+
+/** People of a venue are learned about anew; the answer comes before it is done. */
+export function forgetFlexibility(venue: string): Promise<null> {
+	return ask<null>(`/venues/${encodeURIComponent(venue)}/flexibility/forget`, fetch, {
 		method: 'POST',
 		headers: { 'content-type': 'application/json' },
 		body: '{}'

@@ -104,6 +104,12 @@ it('grows more patient while reopening brings nothing new', () => {
 	expect(FakeSource.all.length).toBeLessThan(10);
 });
 
+it('does not wait for ever for a line that never opens', () => {
+	latest().readyState = FakeSource.CONNECTING;
+	vi.advanceTimersByTime(6000);
+	expect(FakeSource.all).toHaveLength(2);
+});
+
 it('starts over after the page was hidden for long, not after a glance away', () => {
 	latest().say('snapshot', snapshot());
 	show('hidden');

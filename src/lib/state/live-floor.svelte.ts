@@ -156,10 +156,10 @@ export class LiveFloor {
 
 	#onTick(): void {
 		this.now = Date.now();
-		if (this.link === 'connecting' || this.#hiddenSince !== null) return;
+		if (this.#hiddenSince !== null) return;
 		const patience =
 			SILENT_AFTER_MS + (this.#failures && (RETRY_MS[Math.min(this.#failures, RETRY_MS.length - 1)] ?? 0));
-		if (this.#source?.readyState === EventSource.OPEN && this.now - this.#lastEventAt > patience) {
+		if (this.#source?.readyState !== EventSource.CLOSED && this.now - this.#lastEventAt > patience) {
 			this.#failures++;
 			this.link = 'lost';
 			this.#connect();

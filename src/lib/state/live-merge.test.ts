@@ -13,7 +13,8 @@ const frame = (...robots: LiveRobot[]): LiveFrame => ({
 	zones: [],
 	halts: [{ incident: 'i1' } as LiveHalt],
 	observed_m2: 0,
-	coverage: 0
+	coverage: 0,
+	flexibility: { value_m_s: 0.3, n: 0, learned: false, noise_floor_m_s: 0.2 }
 });
 const delta = (change: Partial<LiveDelta>): LiveDelta => ({
 	server_time_ms: 2,

@@ -18,6 +18,7 @@ export function mergeDelta(frame: LiveFrame, delta: LiveDelta): LiveFrame {
 		persons: delta.persons,
 		zones: replaceByKey(frame.zones, delta.zones),
 		halts: delta.halts ?? frame.halts,
+		flexibility: delta.flexibility ?? frame.flexibility,
 		observed_m2: delta.observed_m2,
 		coverage: delta.coverage
 	};

@@ -13,6 +13,7 @@ export const load: LayoutServerLoad = async ({ locals }) => {
 			name: user.name,
 			role: user.role,
 			mayAcknowledge: hasRole(user, 'operator'),
+			mayForget: hasRole(user, 'maintainer'),
 			mayReadRejected: hasRole(user, 'maintainer', 'read')
 		},
 		floors: floors.map(({ key, name, venue_key, venue_name }) => ({

@@ -5,7 +5,13 @@
 
 import type { CauseGroup } from '../halts/cause-groups.ts';
 import type { Robot } from '../floor.ts';
-import { currentFlexibility, startFlexibility, stepFlexibility, type FlexibilityState } from '../room/flexibility.ts';
+import {
+	currentFlexibility,
+	startFlexibility,
+	stepFlexibility,
+	type Flexibility,
+	type FlexibilityState
+} from '../room/flexibility.ts';
 import {
 	confirmedTracks,
 	countSeeing,
@@ -71,7 +77,11 @@ export interface StepResult {
 }
 
 /** A floor nobody has spoken about yet. Halts that were open before a restart go on under the same name. */
-export function createFloorState({ model, robots }: FloorContext, openHalts: readonly OpenHalt[] = []): FloorState {
+export function createFloorState(
+	{ model, robots }: FloorContext,
+	openHalts: readonly OpenHalt[] = [],
+	residuals: readonly number[] = []
+): FloorState {
 	const views = new Map<string, RobotView>();
 	for (const open of openHalts) {
 		const robot = robots.get(open.robot);
@@ -85,7 +95,7 @@ export function createFloorState({ model, robots }: FloorContext, openHalts: rea
 		scannedAt: -Infinity,
 		seenAt: nothingSeen(model),
 		density: noDensity(model),
-		flexibility: startFlexibility(),
+		flexibility: startFlexibility(residuals),
 		groups: [],
 		tally: EMPTY_TALLY
 	};
@@ -94,12 +104,15 @@ export function createFloorState({ model, robots }: FloorContext, openHalts: rea
 /**
  * The floor after some more observations, at `now` (s, not before the last step).
  * Observations of robots the venue does not have are left out; the caller has reported them already.
+ *
+ * @param learned how people of the venue give way; from this floor alone when not given
  */
 export function stepFloor(
 	context: FloorContext,
 	state: FloorState,
 	observations: readonly Observation[],
-	now: number
+	now: number,
+	learned: Flexibility = currentFlexibility([state.flexibility], context.rules.flexibility)
 ): StepResult {
 	const { model, rules } = context;
 	const heard = hearAll(context, state, observations);
@@ -120,7 +133,6 @@ export function stepFloor(
 		const robots = [...heard.robots.values()].flatMap((view) => latestPose(view) ?? []);
 		flexibility = stepFlexibility(flexibility, { time: now, tracks: persons, robots }, rules.flexibility);
 	}
-	const learned = currentFlexibility(flexibility, rules.flexibility);
 	const around: Surroundings = {
 		persons,
 		places: placesOf(persons),

@@ -1,6 +1,7 @@
 /** The engine's picture of one floor at one moment. */
 
 import type { Level } from '../density/level-of-service.ts';
+import type { Flexibility } from '../room/flexibility.ts';
 import type { FloorPose, Moment, OpenHalt, RobotView } from './robot-view.ts';
 
 export interface ZoneResult {
@@ -56,6 +57,6 @@ export interface Frame {
 	readonly observedArea: number;
 	readonly coverage: number;
 	readonly field: FieldResult | null;
-	/** Flexibility used for room shared, m/s, the number of windows behind it, and whether it was learned here */
-	readonly flexibility: { readonly value: number; readonly n: number; readonly learned: boolean };
+	/** What room shared was computed with */
+	readonly flexibility: Flexibility;
 }

@@ -8,11 +8,13 @@ import type { Floor } from '../floor.ts';
 import type { Frame } from './frame.ts';
 import { withTask } from './hear.ts';
 import type { ConnectionObservation, Observation, RobotObservation, StateObservation } from './observation.ts';
+import { currentFlexibility, startFlexibility, type Flexibility } from '../room/flexibility.ts';
 import { startRobotView, type OpenHalt, type RobotView } from './robot-view.ts';
 import type { EngineRules } from './rules.ts';
 
 export interface VenueContext {
 	readonly venue: string;
+	readonly rules: EngineRules;
 	readonly floors: ReadonlyMap<string, FloorContext>;
 	/** Robot map → floor key */
 	readonly floorOfMap: ReadonlyMap<string, string>;
@@ -30,7 +32,12 @@ export interface VenueState {
 	/** Robot key → floor key */
 	readonly floorOfRobot: ReadonlyMap<string, string>;
 	readonly waiting: ReadonlyMap<string, Waiting>;
+	/** How people of the venue give way, and when that was last worked out, s */
+	readonly learned: { readonly flexibility: Flexibility; readonly at: number };
 }
+
+/** s between two workings out: what people do does not change faster. */
+const LEARN_EVERY_S = 5;
 
 export interface VenueStep {
 	readonly state: VenueState;
@@ -53,22 +60,33 @@ export function createVenueContext(
 		contexts.set(floor.key, { venue, model, rules, robots: byKey });
 		for (const map of Object.keys(floor.maps)) floorOfMap.set(map, floor.key);
 	}
-	return { venue, floors: contexts, floorOfMap, robots: byKey };
+	return { venue, rules, floors: contexts, floorOfMap, robots: byKey };
 }
 
-/** @param openHalts halts left open by an earlier run, by floor key */
+/** What an earlier run left behind, by floor key. */
+export interface Remembered {
+	readonly openHalts?: ReadonlyMap<string, readonly OpenHalt[]>;
+	/** Residuals of the flexibility, m/s */
+	readonly residuals?: ReadonlyMap<string, readonly number[]>;
+}
+
 export function createVenueState(
-	{ floors }: VenueContext,
-	openHalts: ReadonlyMap<string, readonly OpenHalt[]> = new Map()
+	{ floors, rules }: VenueContext,
+	{ openHalts = new Map(), residuals = new Map() }: Remembered = {}
 ): VenueState {
 	const states = new Map<string, FloorState>();
 	const floorOfRobot = new Map<string, string>();
 	for (const [key, context] of floors) {
-		const state = createFloorState(context, openHalts.get(key) ?? []);
+		const state = createFloorState(context, openHalts.get(key) ?? [], residuals.get(key) ?? []);
 		states.set(key, state);
 		for (const robot of state.robots.keys()) floorOfRobot.set(robot, key);
 	}
-	return { floors: states, floorOfRobot, waiting: new Map() };
+	return {
+		floors: states,
+		floorOfRobot,
+		waiting: new Map(),
+		learned: { flexibility: learn(states.values(), rules), at: -Infinity }
+	};
 }
 
 /** All floors of the venue after some more observations, at `now` in s. */
@@ -82,13 +100,30 @@ export function stepVenue(
 	const floors = new Map<string, FloorState>();
 	const frames: Frame[] = [];
 	const events: EngineEvent[] = routed.events;
+	const learned =
+		now - state.learned.at >= LEARN_EVERY_S
+			? { flexibility: learn(routed.floors.values(), context.rules), at: now }
+			: state.learned;
 	for (const [key, floorContext] of context.floors) {
-		const step = stepFloor(floorContext, routed.floors.get(key)!, routed.perFloor.get(key) ?? [], now);
+		const heard = routed.perFloor.get(key) ?? [];
+		const step = stepFloor(floorContext, routed.floors.get(key)!, heard, now, learned.flexibility);
 		floors.set(key, step.state);
 		frames.push(step.frame);
 		events.push(...step.events);
 	}
-	return { state: { floors, floorOfRobot: routed.floorOfRobot, waiting: routed.waiting }, frames, events };
+	return { state: { floors, floorOfRobot: routed.floorOfRobot, waiting: routed.waiting, learned }, frames, events };
+}
+
+const learn = (floors: Iterable<FloorState>, { flexibility }: EngineRules): Flexibility =>
+	currentFlexibility(
+		[...floors].map((floor) => floor.flexibility),
+		flexibility
+	);
+
+/** The venue with all forgotten that it had learned about how people give way. */
+export function forgetFlexibility({ rules }: VenueContext, state: VenueState): VenueState {
+	const floors = new Map([...state.floors].map(([key, floor]) => [key, { ...floor, flexibility: startFlexibility() }]));
+	return { ...state, floors, learned: { flexibility: learn(floors.values(), rules), at: state.learned.at } };
 }
 
 function route(context: VenueContext, state: VenueState, observations: readonly Observation[]) {

@@ -89,14 +89,14 @@ describe('learning', () => {
 
 	it('uses the default of 0.3 m/s and says so until 50 windows are known', () => {
 		const few = learn(Array.from({ length: 49 }, () => 0.5));
-		expect(currentFlexibility(few, RULE)).toMatchObject({ value: 0.3, n: 49, learned: false });
+		expect(currentFlexibility([few], RULE)).toMatchObject({ value: 0.3, n: 49, learned: false });
 		const enough = learn([0.5], { from: few });
-		expect(currentFlexibility(enough, RULE)).toMatchObject({ n: 50, learned: true });
-		expect(currentFlexibility(enough, RULE).value).toBeCloseTo(0.5, 9);
+		expect(currentFlexibility([enough], RULE)).toMatchObject({ n: 50, learned: true });
+		expect(currentFlexibility([enough], RULE).value).toBeCloseTo(0.5, 9);
 	});
 
 	it('stays within the bounds, whatever was seen, and shows the noise floor beside it', () => {
-		const values = (miss: number) => currentFlexibility(learn(Array.from({ length: 60 }, () => miss)), RULE);
+		const values = (miss: number) => currentFlexibility([learn(Array.from({ length: 60 }, () => miss))], RULE);
 		expect(values(0).value).toBe(0.1);
 		expect(values(3).value).toBe(0.8);
 		expect(values(3).noiseFloor).toBeCloseTo(0.21, 2);

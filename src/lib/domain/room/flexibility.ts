@@ -92,7 +92,12 @@ export interface FlexibilityState {
 	readonly open: ReadonlyMap<string | number, TrackSample & { readonly near: boolean }>;
 }
 
-export const startFlexibility = (): FlexibilityState => ({ time: -Infinity, residuals: [], open: new Map() });
+/** @param residuals what was learned before, oldest first, m/s; anything that is no such number is left out */
+export const startFlexibility = (residuals: readonly number[] = []): FlexibilityState => ({
+	time: -Infinity,
+	residuals: residuals.filter((residual) => Number.isFinite(residual) && residual >= 0),
+	open: new Map()
+});
 
 /** A window that cannot be closed within this factor of its length is dropped: the track had a gap. */
 const LATE = 1.25;
@@ -134,16 +139,26 @@ export function stepFlexibility(
 	return { time, residuals, open };
 }
 
+/** What people of a venue give way by, and how well that is known. */
+export interface Flexibility {
+	/** m/s */
+	readonly value: number;
+	/** Windows behind it */
+	readonly n: number;
+	/** False while the fallback is used */
+	readonly learned: boolean;
+	/** m/s that tracker noise alone would give */
+	readonly noiseFloor: number;
+}
+
 /**
- * The flexibility to use now, m/s: learned and bounded, or the fallback while too few windows are known (`learned` says
- * which). `n` windows stand behind it. Show `noiseFloor` beside it: what tracker noise alone would give with nobody yielding.
+ * The flexibility to use now from all that was learned on the floors of one venue, m/s: bounded, or the fallback while too
+ * few windows are known (`learned` says which). `n` windows stand behind it. Show `noiseFloor` beside it: what tracker noise alone would give with nobody yielding.
  */
-export function currentFlexibility(
-	state: FlexibilityState,
-	rule: FlexibilityRule
-): { value: number; n: number; learned: boolean; noiseFloor: number } {
-	const n = state.residuals.length;
-	const found = n >= rule.leastWindows ? computeQuantile(state.residuals, rule.quantile) : null;
+export function currentFlexibility(states: readonly FlexibilityState[], rule: FlexibilityRule): Flexibility {
+	const residuals = states.flatMap((state) => state.residuals);
+	const n = residuals.length;
+	const found = n >= rule.leastWindows ? computeQuantile(residuals, rule.quantile) : null;
 	const value = found === null ? rule.fallback : Math.min(rule.most, Math.max(rule.least, found));
 	return { value, n, learned: found !== null, noiseFloor: computeNoiseFloor(rule) };
 }

@@ -7,7 +7,7 @@ import { robotTopic } from '../../contracts/mqtt.ts';
 import type { EngineStart, FromEngine } from '../../contracts/threads.ts';
 import type { EngineEvent } from '../../domain/engine/events.ts';
 import type { Observation, RobotObservation } from '../../domain/engine/observation.ts';
-import { createVenueState, stepVenue, type VenueState } from '../../domain/engine/venue-engine.ts';
+import { createVenueState, forgetFlexibility, stepVenue, type VenueState } from '../../domain/engine/venue-engine.ts';
 import { secondsFromMs } from '../../domain/units.ts';
 import { openDatabase } from '../db/connection.ts';
 import { createIntake } from '../ingest/intake.ts';
@@ -21,6 +21,8 @@ const TICK_MS = 100;
 const FRAME_TICKS = 2;
 const FIELD_TICKS = 10;
 const HEALTH_TICKS = 10;
+/** Ticks between two times that what was learned about people is stored */
+const LEARNED_TICKS = 600;
 /** Observations waiting for a tick beyond which the oldest are dropped: 200 robots send 6,000 in 1.5 s. */
 const MOST_WAITING = 20_000;
 /** ms the broker may be away before it is an alarm and not a hiccup */
@@ -31,6 +33,7 @@ const CLOCK_SET_BACK_S = 5;
 export interface Engine {
 	/** Reads floors, zones and robots again; floors that did not change go on as they are. */
 	reload(): Promise<void>;
+	forgetFlexibility(venue: string): void;
 	stop(): Promise<void>;
 }
 
@@ -108,6 +111,7 @@ export async function startEngine(
 		intake.tick(wallMs());
 		if (ticks % HEALTH_TICKS === 0) {
 			watchBroker();
+			if (ticks % LEARNED_TICKS === 0) keepLearned();
 			post({ type: 'health', health: health() });
 		}
 	}
@@ -136,6 +140,12 @@ export async function startEngine(
 		} else if (event.type === 'clock_stepped') {
 			log.info({ robot: event.robot, offset_s: event.offset }, 'A robot’s clock was set.');
 		} else recorder.record(site, event);
+	}
+
+	function keepLearned(): void {
+		for (const { site, state } of venues.values()) {
+			for (const [floor, { flexibility }] of state.floors) recorder.learned(site, floor, flexibility.residuals);
+		}
 	}
 
 	function watchBroker(): void {
@@ -185,10 +195,17 @@ export async function startEngine(
 				venues.set(site.key, next);
 			}
 		},
+		forgetFlexibility(venue) {
+			const running = venues.get(venue);
+			if (!running) return;
+			running.state = forgetFlexibility(running.site.context, running.state);
+			keepLearned();
+		},
 		async stop() {
 			stopped = true;
 			clearInterval(timer);
 			await source.stop();
+			keepLearned();
 			await recorder.stop();
 			await rejected.stop();
 			await database.close();
@@ -203,12 +220,15 @@ function begin(site: Site, before?: VenueState): Running {
 				[...before.floors].map(([key, { robots }]) => [key, [...robots.values()].flatMap((view) => view.open ?? [])])
 			)
 		: site.openHalts;
-	return { site, state: createVenueState(site.context, open), waiting: [] };
+	const residuals = before
+		? new Map([...before.floors].map(([key, { flexibility }]) => [key, flexibility.residuals]))
+		: site.residuals;
+	return { site, state: createVenueState(site.context, { openHalts: open, residuals }), waiting: [] };
 }
 
 /** A venue after a change in the database: floors that are still the same keep all they know. */
 function continued(running: Running, site: Site): { site: Site; state: VenueState } {
-	const fresh = createVenueState(site.context, site.openHalts);
+	const fresh = createVenueState(site.context, site);
 	const floors = new Map(
 		[...fresh.floors].map(([key, state]) => {
 			const was = running.site.floors.get(key);
@@ -219,7 +239,8 @@ function continued(running: Running, site: Site): { site: Site; state: VenueStat
 	);
 	const floorOfRobot = new Map<string, string>();
 	for (const [key, { robots }] of floors) for (const robot of robots.keys()) floorOfRobot.set(robot, key);
-	return { site, state: { floors, floorOfRobot, waiting: running.state.waiting } };
+	const { waiting, learned } = running.state;
+	return { site, state: { floors, floorOfRobot, waiting, learned } };
 }
 
 /** What is kept of a message the engine could not use: its content as it was understood. */

@@ -17,6 +17,7 @@ import {
 	insertIncident
 } from '../repositories/halts.ts';
 import { addDensityMinutes, addExposureMinutes } from '../repositories/minutes.ts';
+import { storeResiduals } from '../repositories/residuals.ts';
 import type { Site } from './site.ts';
 import { startWriteQueue, type Write } from './write-queue.ts';
 
@@ -28,6 +29,8 @@ export interface Recorder {
 	duplicateCredential(site: Site, robot: string, active: boolean, atMs: number): void;
 	/** Raises or returns the alarm about a broker that cannot be reached. */
 	broker(site: Site, away: boolean, message: string, atMs: number): void;
+	/** Keeps what was learned about how people of a floor give way. */
+	learned(site: Site, floor: string, residuals: readonly number[]): void;
 	trouble(): string | null;
 	settle(): Promise<void>;
 	stop(): Promise<void>;
@@ -82,6 +85,13 @@ export function startRecorder({ db, log, onAlarm, retryMs }: RecorderOptions): R
 						})
 					: returnByKey(trx, site, 'broker', atMs)
 			);
+		},
+		learned(site, floor, residuals) {
+			if (!site.floors.has(floor)) return;
+			queue.push(async (trx) => {
+				await storeResiduals(trx, floor, residuals);
+				return null;
+			});
 		},
 		trouble: queue.trouble,
 		settle: queue.settle,

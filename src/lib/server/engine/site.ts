@@ -9,6 +9,7 @@ import { secondsFromMs } from '../../domain/units.ts';
 import type { Database } from '../db/schema.ts';
 import { readFloors, type StoredFloor } from '../repositories/floors.ts';
 import { readOpenHaltRows } from '../repositories/halts.ts';
+import { readResiduals } from '../repositories/residuals.ts';
 import { readRobots } from '../repositories/robots.ts';
 
 /** One venue with the row ids its events are stored under. */
@@ -24,6 +25,8 @@ export interface Site {
 	readonly marks: ReadonlyMap<string, string>;
 	/** Halts left open by an earlier run, by floor key */
 	readonly openHalts: ReadonlyMap<string, readonly OpenHalt[]>;
+	/** What was learned about how people give way, m/s, by floor key */
+	readonly residuals: ReadonlyMap<string, readonly number[]>;
 }
 
 /** Venues named by key, all when none is named; those without a floor are left out. */
@@ -31,6 +34,7 @@ export async function readSites(db: Kysely<Database>, venues: readonly string[])
 	const floors = await readFloors(db, venues);
 	const robots = await readRobots(db, venues);
 	const open = await readOpenHaltRows(db);
+	const learned = await readResiduals(db);
 	const sites: Site[] = [];
 	for (const [key, own] of groupBy(floors, ({ venue }) => venue.key)) {
 		const { id } = own[0]!.venue;
@@ -53,7 +57,13 @@ export async function readSites(db: Kysely<Database>, venues: readonly string[])
 			floors: new Map(own.map((stored) => [stored.floor.key, stored])),
 			robotIds: new Map(fleet.map(({ id: robotId, robot }) => [robot.key, robotId])),
 			marks: new Map(fleet.map(({ robot }) => [robot.key, robot.mark])),
-			openHalts
+			openHalts,
+			residuals: new Map(
+				own.flatMap(({ floor }) => {
+					const residuals = learned.get(floor.key);
+					return residuals ? [[floor.key, residuals] as const] : [];
+				})
+			)
 		});
 	}
 	return sites;

@@ -31,7 +31,8 @@ const frame: fc.Arbitrary<LiveFrame> = record({
 	zones: fc.uniqueArray(zone, byKey),
 	halts,
 	observed_m2: fc.nat(9),
-	coverage: fc.constantFrom(0, 0.5, 1)
+	coverage: fc.constantFrom(0, 0.5, 1),
+	flexibility: fc.constantFrom(0, 80).map((n) => ({ value_m_s: 0.3, n, learned: n > 50, noise_floor_m_s: 0.2 }))
 });
 
 const sorted = (frame: LiveFrame): LiveFrame => {

@@ -17,6 +17,7 @@ export function computeDelta(before: LiveFrame, after: LiveFrame): LiveDelta {
 		persons: after.persons,
 		zones: changed(before.zones, after.zones),
 		...(isDeepStrictEqual(before.halts, after.halts) ? {} : { halts: after.halts }),
+		...(isDeepStrictEqual(before.flexibility, after.flexibility) ? {} : { flexibility: after.flexibility }),
 		observed_m2: after.observed_m2,
 		coverage: after.coverage
 	};

@@ -16,6 +16,7 @@ try {
 			engine.reload().catch((cause: unknown) => log.error(cause, 'the changed configuration cannot be read'));
 			return;
 		}
+		if (message.type === 'forget_flexibility') return engine.forgetFlexibility(message.venue);
 		void engine.stop().then(() => {
 			tell({ type: 'stopped' });
 			parentPort?.close();

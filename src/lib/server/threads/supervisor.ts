@@ -10,6 +10,8 @@ import { startWorker } from './locate.ts';
 export interface Threads {
 	/** Configuration changed in the database. */
 	reload(): void;
+	/** People of this venue are learned about anew. */
+	forgetFlexibility(venue: string): void;
 	health(): LiveHealth;
 	/** Ends both threads after they have written what they hold. */
 	stop(): Promise<void>;
@@ -152,6 +154,7 @@ export async function startThreads({
 			broker?.send({ type: 'reload' });
 			engine.send({ type: 'reload' });
 		},
+		forgetFlexibility: (venue) => engine.send({ type: 'forget_flexibility', venue }),
 		health: currentHealth,
 		get brokerPort() {
 			return brokerPort;
