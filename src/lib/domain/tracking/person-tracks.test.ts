@@ -144,20 +144,34 @@ describe('people who are no longer reported', () => {
 	const standing = (n: number, every = 0.1) =>
 		run(times(0, n, every).map((t) => scan('a', t, [person('1', 0, 0), person('2', 3, 0)])));
 
-	it('are gone after four scans of a robot that sees the place', () => {
+	it('are gone after eight scans of a robot that sees the place', () => {
 		let state = standing(10);
-		const counts = times(1, 4, 0.1).map((t) => {
+		const counts = times(1, 8, 0.1).map((t) => {
 			state = stepTracker(state, scan('a', t, [person('2', 3, 0)]));
 			return state.tracks.length;
 		});
-		expect(counts).toEqual([2, 2, 2, 1]);
+		expect(counts).toEqual([2, 2, 2, 2, 2, 2, 2, 1]);
 	});
 
-	it('are gone after 0.6 s of slow scans', () => {
+	it('are gone after 1.5 s of slow scans', () => {
 		const state = standing(5, 0.4);
-		const once = run([scan('a', 2, [person('2', 3, 0)])], state);
-		expect(once.tracks).toHaveLength(2);
-		expect(run([scan('a', 2.4, [person('2', 3, 0)])], once).tracks).toHaveLength(1);
+		const thrice = run(
+			[2, 2.4, 2.8].map((t) => scan('a', t, [person('2', 3, 0)])),
+			state
+		);
+		expect(thrice.tracks).toHaveLength(2);
+		expect(run([scan('a', 3.2, [person('2', 3, 0)])], thrice).tracks).toHaveLength(1);
+	});
+
+	it('take a stated velocity as a measurement of its own', () => {
+		const walking = times(0, 6, 0.2).map((t) => scan('a', t, [{ ...person('1', 1.2 * t, 0), sd: 0.1 }]));
+		const stated = walking.map((each) => ({
+			...each,
+			persons: each.persons.map((one) => ({ ...one, vx: 1.2, vy: 0 }))
+		}));
+		const speedVariance = (scans: PersonScan[]) => run(scans).tracks[0]!.speedVariance;
+		expect(speedVariance(stated)).toBeLessThan(speedVariance(walking) / 3);
+		expect(run(stated).tracks[0]!.vx).toBeCloseTo(1.2, 1);
 	});
 
 	it('stay for two seconds where no robot can see', () => {

@@ -1,7 +1,7 @@
 import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
 
-const css = readFileSync(new URL('../../../app.css', import.meta.url), 'utf8');
+const css = readFileSync(new URL('./app.css', import.meta.url), 'utf8');
 
 /** Tokens of one theme: the block of the rule that starts with `rule`. */
 function tokensAfter(rule: string): Map<string, string> {
