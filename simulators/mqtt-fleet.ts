@@ -179,5 +179,6 @@ async function sayGoodbye(client: MqttClient, topic: string, goodbye: Connection
 	if (client.connected) {
 		await client.publishAsync(topic, JSON.stringify(goodbye), { qos: 1, retain: true }).catch(() => {});
 	}
-	await client.endAsync(true).catch(() => {});
+	// Without a parting packet the broker would send the last will after the goodbye.
+	await client.endAsync(!client.connected).catch(() => {});
 }

@@ -3,7 +3,8 @@
 import type { People, Pose, State } from '../../src/lib/contracts/mqtt.ts';
 import type { Floor, Robot } from '../../src/lib/domain/floor.ts';
 import { MapFrame } from '../core/floor-world.ts';
-import { extentOf, OBSERVER, RECORDED_ROBOT } from './floor.ts';
+import { boundsOf } from '../../src/lib/domain/geometry/polygon.ts';
+import { OBSERVER, RECORDED_ROBOT } from './floor.ts';
 import type { RecordedPose, Recording } from './parse.ts';
 
 export interface Observer {
@@ -35,7 +36,7 @@ export function observersOf(recording: Recording, floor: Floor, count: number, t
 	const maps = Object.entries(floor.maps);
 	const [name, toFloor] = turned ? maps[1]! : maps[0]!;
 	const frame = new MapFrame(name, toFloor);
-	const { minX, minY, maxX, maxY } = extentOf(recording);
+	const { minX, minY, maxX, maxY } = boundsOf(floor.walkable);
 	const [width, height] = [maxX - minX, maxY - minY];
 	const diagonal = Math.hypot(width, height);
 	if (recording.robot) {

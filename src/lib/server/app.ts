@@ -7,6 +7,7 @@ import { readLiveAlarms } from './alarms/read.ts';
 import { createAuth, type Auth } from './auth/sessions.ts';
 import { writeMosquittoFiles } from './broker/mosquitto-files.ts';
 import { readRobotCredentials } from './broker/read-credentials.ts';
+import { watchConfiguration } from './configuration-watch.ts';
 import { openDatabase } from './db/connection.ts';
 import { migrateToLatest } from './db/migrate.ts';
 import type { Database } from './db/schema.ts';
@@ -31,6 +32,8 @@ export interface App {
 
 /** Readers take a silent line for dead after 5 s, so health is told well before, engine or not. */
 const HEALTH_EVERY_MS = 2000;
+/** Somebody who adds a floor or a robot waits no longer than this for it. */
+const CONFIGURATION_EVERY_MS = 3000;
 const SWEEP_EVERY_MS = 3_600_000;
 
 /**
@@ -85,6 +88,14 @@ export async function startApp(
 
 		every(HEALTH_EVERY_MS, () => hub.publishHealth(threads.health()));
 		every(SWEEP_EVERY_MS, () => auth.sweep());
+		every(
+			CONFIGURATION_EVERY_MS,
+			watchConfiguration(db, async () => {
+				log.info('floors, robots or credentials changed');
+				await writeBrokerFiles(settings, db, log);
+				threads.reload();
+			})
+		);
 		return { settings, db, log, hub, metrics, auth, threads, stop };
 	} catch (cause) {
 		await stop();
