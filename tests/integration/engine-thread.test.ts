@@ -145,7 +145,7 @@ it('takes a robot from its message to a frame, an incident and an alarm', async 
 	const [incident] = await openIncidents();
 	expect(incident).toMatchObject({ kind: 'freeze', alarm_id: alarm.id, software: '1.2.3' });
 	expect(alarm.raised_at_ms - alarm.onset_ms).toBeLessThan(10_000);
-	expect(frame?.halts[0]?.incident).toBe(incident?.id);
+	await until(() => frame?.halts[0]?.incident === incident?.id, 'the halt in a frame');
 });
 
 it('starts a dead engine again, says so meanwhile, and goes on with the halt that was open', async () => {
