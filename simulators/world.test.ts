@@ -1,6 +1,7 @@
 import { describe, expect, it, vi } from 'vitest';
 import { CHANNELS, ObservedPerson, type People } from '../src/lib/contracts/mqtt.ts';
 import { isInsideRing } from './core/nav-grid.ts';
+import { WALKING } from './crowd/population.ts';
 import { scenarioOf, type ScenarioName } from './scenarios.ts';
 import type { Delivery } from './transport/link.ts';
 import { fleetOf, SALTMARSH } from './venue/saltmarsh.ts';
@@ -53,6 +54,24 @@ describe('World', () => {
 			const { walls } = world.floors[vehicle.floor]!.driveGrid;
 			expect(walls.distance(vehicle.x, vehicle.y)).toBeGreaterThan(0.6 * vehicle.radius);
 		}
+	});
+
+	it('lets nobody walk against a wall behind which the goal lies', () => {
+		const world = create('day', 1, 6);
+		run(world, 120);
+		const [{ people, driveGrid }] = world.floors as [(typeof world.floors)[0]];
+		const walking: number[] = [];
+		for (let i = 0; i < people.end; i++) if (people.alive[i] && people.mode[i] === WALKING) walking.push(i);
+		const before = new Map(walking.map((i) => [people.uid[i]!, [people.x[i]!, people.y[i]!] as const]));
+		run(world, 20);
+		const pinned = walking.filter((i) => {
+			const from = before.get(people.uid[i]!);
+			if (!people.alive[i] || !from || people.mode[i] !== WALKING) return false;
+			const moved = Math.hypot(people.x[i]! - from[0], people.y[i]! - from[1]);
+			return moved < 1 && driveGrid.walls.distance(people.x[i]!, people.y[i]!) < 0.5;
+		});
+		expect(walking.length).toBeGreaterThan(40);
+		expect(pinned.length).toBeLessThanOrEqual(2);
 	});
 
 	it('never says what is truly the case: messages hold the fields of the contract and not one more', () => {

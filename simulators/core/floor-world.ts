@@ -9,8 +9,11 @@ import type { PlaceKind, VenueFloor } from '../venue/model.ts';
 import { computeDistanceField, createNavGrid, isInsideRing, type DistanceField, type NavGrid } from './nav-grid.ts';
 import type { Random } from './random.ts';
 
-/** m the centre of a person or a robot keeps from walls when planning its way. */
-const WALK_CLEARANCE = 0.25;
+/**
+ * m the centre of a person or a robot keeps from walls when planning its way: more than half a cell, since the cells on both
+ * sides of a wall that runs along their edges must not count as neighbours.
+ */
+const WALK_CLEARANCE = 0.26;
 const DRIVE_CLEARANCE = 0.55;
 /** Where people stand about: robots are routed round it if they can be. */
 const SHUNNED: readonly PlaceKind[] = ['table', 'audience', 'counter', 'lift', 'lounge'];

@@ -1,6 +1,7 @@
 /** How people move from one instant to the next: a social-force model with a time gap to the person ahead. */
 
-import { distanceAt, type NavGrid } from '../core/nav-grid.ts';
+import type { Point } from '../../src/lib/domain/geometry/types.ts';
+import { distanceAt, nearestFree, type NavGrid } from '../core/nav-grid.ts';
 import type { Random } from '../core/random.ts';
 import { FOLLOWING, HASH_CELL, STANDING, WALKING, type Population } from './population.ts';
 
@@ -268,9 +269,13 @@ export class Walking {
 	}
 
 	#faceSpot(i: number): void {
+		this.#face(i, { x: this.people.goalX[i]!, y: this.people.goalY[i]! });
+	}
+
+	#face(i: number, spot: Point): void {
 		const { people } = this;
-		const dx = people.goalX[i]! - people.x[i]!;
-		const dy = people.goalY[i]! - people.y[i]!;
+		const dx = spot.x - people.x[i]!;
+		const dy = spot.y - people.y[i]!;
 		const d = Math.hypot(dx, dy);
 		const there = d < 0.2;
 		people.wayX[i] = there ? 0 : dx / d;
@@ -293,6 +298,8 @@ export class Walking {
 		}
 		const h = grid.cell;
 		const here = distanceAt(grid, field, x, y);
+		if (here === Infinity)
+			return this.#face(i, nearestFree(grid, x, y) ?? { x: people.goalX[i]!, y: people.goalY[i]! });
 		const slope = (ahead: number, behind: number) =>
 			ahead === Infinity
 				? behind === Infinity
@@ -301,8 +308,13 @@ export class Walking {
 				: behind === Infinity
 					? (ahead - here) / h
 					: (ahead - behind) / (2 * h);
-		const gx = slope(distanceAt(grid, field, x + h, y), distanceAt(grid, field, x - h, y));
-		const gy = slope(distanceAt(grid, field, x, y + h), distanceAt(grid, field, x, y - h));
+		const cell = grid.index(x, y);
+		const beside = cell >= 0 && grid.cost[cell]! > 1;
+		// The other side of a wall may be nearer to the goal; nobody walks there through it.
+		const probe = (toX: number, toY: number) =>
+			beside && grid.walls.isBlocked(x, y, toX, toY) ? Infinity : distanceAt(grid, field, toX, toY);
+		const gx = slope(probe(x + h, y), probe(x - h, y));
+		const gy = slope(probe(x, y + h), probe(x, y - h));
 		const g = Math.hypot(gx, gy);
 		people.wayX[i] = g > 1e-6 ? -gx / g : dx / d;
 		people.wayY[i] = g > 1e-6 ? -gy / g : dy / d;
