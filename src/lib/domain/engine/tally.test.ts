@@ -35,7 +35,7 @@ it('puts a density on the lower bound of a band into that band, and an unmeasure
 	]);
 });
 
-it('stops the clock at onset: seconds between onset and detection are not exposure', () => {
+it('trap "exposure is driving in that band": the clock stops at onset, seconds until detection are not exposure', () => {
 	let tally = addDrives(
 		EMPTY_TALLY,
 		[1, 2, 3, 4, 5, 6, 7, 8].map((second) => drive(600 + second))
