@@ -129,3 +129,22 @@ test('a filter of incidents lives in the address', async ({ page }) => {
 	await expect(page.getByLabel('Verdict')).toHaveValue('packed');
 	expect(new Set(await verdicts.allInnerTexts())).toEqual(new Set(['packed']));
 });
+
+test('a token made on the account page opens the interface, and no longer once withdrawn', async ({
+	page,
+	request
+}) => {
+	await signIn(page);
+	await page.goto(`${desk.url}/account`);
+	await page.getByLabel('What for').fill('wall clock');
+	await page.getByRole('button', { name: 'Make a token' }).click();
+	const token = await page.getByText(/^elbowroom_/).innerText();
+	const robots = () =>
+		request
+			.get(`${desk.url}/api/v1/robots`, { headers: { authorization: `Bearer ${token}` } })
+			.then((answer) => answer.status());
+	expect(await robots()).toBe(200);
+	await page.getByRole('button', { name: 'Withdraw wall clock' }).click();
+	await expect(page.getByText('You have none.')).toBeVisible();
+	expect(await robots()).toBe(401);
+});

@@ -1,7 +1,13 @@
 /** Signing in, staying signed in, and what is left in the database of it. */
 
 import { afterEach, beforeEach, describe, expect, it, vi } from 'vitest';
-import { createApiToken, isApiTokenLive, validateApiToken } from '../../src/lib/server/auth/api-tokens.ts';
+import {
+	createApiToken,
+	isApiTokenLive,
+	listApiTokens,
+	revokeApiToken,
+	validateApiToken
+} from '../../src/lib/server/auth/api-tokens.ts';
 import { deleteSessionCookie, readSessionCookie, setSessionCookie } from '../../src/lib/server/auth/cookie.ts';
 import { hashPassword, verifyPassword } from '../../src/lib/server/auth/passwords.ts';
 import { createAuth, type Auth, type SessionUser } from '../../src/lib/server/auth/sessions.ts';
@@ -266,6 +272,19 @@ describe('API tokens', () => {
 		expect(await isApiTokenLive(open.db, b.id)).toBe(true);
 		await open.db.updateTable('user').set({ disabled_at_ms: T0 }).execute();
 		expect(await validateApiToken(open.db, b.token, T0)).toBeNull();
+	});
+
+	it('can be withdrawn by their owner and nobody else', async () => {
+		const user = await insertTestUser(open.db, 'operator');
+		const other = await insertTestUser(open.db, 'admin');
+		const { id, token } = await create(user, 'operator');
+		await expect(revokeApiToken(open.db, { user: other, id, nowMs: T0 })).rejects.toMatchObject({ code: 'not_found' });
+		expect(await listApiTokens(open.db, user.id)).toEqual([expect.objectContaining({ id, name: 'wall' })]);
+		await revokeApiToken(open.db, { user, id, nowMs: T0 });
+		await revokeApiToken(open.db, { user, id, nowMs: T0 + 1 });
+		expect(await validateApiToken(open.db, token, T0)).toBeNull();
+		expect(await listApiTokens(open.db, user.id)).toEqual([]);
+		expect(await trail()).toEqual(['api_token_created', 'api_token_revoked']);
 	});
 
 	it('note their last use once a minute', async () => {

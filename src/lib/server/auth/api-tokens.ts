@@ -65,6 +65,42 @@ export async function validateApiToken(
 	return { tokenId: row.id, user: { id, email, name, role: tokenRole(row.role, row.token_role) } };
 }
 
+/** A person's own tokens that are still good, newest first; at most `limit`. Never the secrets: those are not stored. */
+export async function listApiTokens(db: Kysely<Database>, userId: string, limit = 100) {
+	return db
+		.selectFrom('api_token')
+		.select(['id', 'name', 'role', 'created_at_ms', 'last_used_at_ms'])
+		.where('user_id', '=', userId)
+		.where('revoked_at_ms', 'is', null)
+		.orderBy('id', 'desc')
+		.limit(limit)
+		.execute();
+}
+
+/**
+ * Withdraws one of a person's own tokens; from then on it opens nothing. Withdrawing it again changes nothing.
+ *
+ * @throws Failure 'not_found' when the person has no such token
+ */
+export async function revokeApiToken(
+	db: Kysely<Database>,
+	{ user, id, nowMs }: { user: SessionUser; id: number; nowMs: number }
+): Promise<void> {
+	await writeTransaction(db, async (trx) => {
+		const own = await trx
+			.selectFrom('api_token')
+			.select('revoked_at_ms')
+			.where('id', '=', id)
+			.where('user_id', '=', user.id)
+			.executeTakeFirst();
+		if (own === undefined) throw new Failure('not_found', 'You have no such token.');
+		if (own.revoked_at_ms !== null) return;
+		await trx.updateTable('api_token').set({ revoked_at_ms: nowMs }).where('id', '=', id).execute();
+		const subject = `api_token ${id}`;
+		await insertAuditEvent(trx, { at_ms: nowMs, actor_user_id: user.id, act: 'api_token_revoked', subject });
+	});
+}
+
 /** Whether a token is still good. */
 export const isApiTokenLive = async (db: Kysely<Database>, tokenId: number): Promise<boolean> =>
 	(await liveTokens(db).select('api_token.id').where('api_token.id', '=', tokenId).executeTakeFirst()) !== undefined;

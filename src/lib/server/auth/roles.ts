@@ -3,6 +3,9 @@
 import type { Role } from '../db/schema.ts';
 
 export type { Role } from '../db/schema.ts';
+/** All roles, in the order people are told of them. */
+export const ROLES = ['display', 'operator', 'maintainer', 'manager', 'admin'] as const satisfies readonly Role[];
+
 export type Purpose = 'read' | 'change';
 
 /** display < operator < maintainer < admin. The manager stands beside this order. */
